@@ -1,0 +1,1 @@
+"""How it is searched, judged and shown. Knows nothing of heat, only `Problem`."""

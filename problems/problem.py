@@ -1,0 +1,195 @@
+"""The one interface between what is designed (`problems`) and how it is searched (`optim`).
+
+A `Problem` names its variables and outcomes and evaluates many designs at once. It draws no
+picture and knows no search; `optim` in turn knows nothing of heat, only what stands here.
+"""
+
+from __future__ import annotations
+
+from abc import ABC, abstractmethod
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from typing import Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from problems.units import suffix
+
+Floats = NDArray[np.float64]
+Bools = NDArray[np.bool_]
+
+
+@dataclass(frozen=True)
+class Variable:
+    """A quantity that the search may move, in SI, between `low` and `high`."""
+
+    name: str
+    unit: str
+    low: float
+    high: float
+    meaning: str
+    scale: Literal["linear", "log"] = "linear"
+
+    @property
+    def column(self) -> str:
+        """Name with its unit suffix, as in front.csv."""
+        return self.name + suffix(self.unit)
+
+
+@dataclass(frozen=True)
+class Outcome:
+    """A figure that a design gives, in the SI unit `unit`, with one line of meaning."""
+
+    name: str
+    unit: str
+    meaning: str
+
+    @property
+    def column(self) -> str:
+        """Name with its unit suffix, as in front.csv."""
+        return self.name + suffix(self.unit)
+
+
+@dataclass(frozen=True)
+class Aim:
+    """An outcome to be had most or least of."""
+
+    outcome: str
+    sense: Literal["most", "least"]
+
+
+@dataclass(frozen=True)
+class Limit:
+    """A bound on an outcome, in SI; at least one side is given."""
+
+    outcome: str
+    at_least: float | None = None
+    at_most: float | None = None
+
+
+@dataclass(frozen=True)
+class Law:
+    """A published relation used in an evaluation: what it is, where from, where it holds."""
+
+    name: str
+    source: str
+    valid: str
+
+
+@dataclass(frozen=True)
+class Evaluation:
+    """What n designs give.
+
+    Every array has shape (n,). `settings` holds the geometry and flow of each design in full,
+    fixed values as well as searched ones, keyed by the names in `Problem.settings`; `outcomes`
+    is keyed by the names in `Problem.outcomes`. Neither ever holds a NaN. `possible` is false
+    where the design cannot exist or cannot be evaluated, with the reason in `reasons` (an empty
+    string elsewhere). `impossible_by` says how far such a design is from existing: 0 where it
+    is possible, growing smoothly above 0 elsewhere, so that a search finds its way back.
+    `outside` maps a law's name to the designs that lie outside its range of validity;
+    `cautions` maps one sentence for the engineer to the designs it applies to. `group` names
+    the sort of design, for telling them apart in pictures ("plain", "tripped").
+    """
+
+    settings: Mapping[str, Floats]
+    outcomes: Mapping[str, Floats]
+    possible: Bools
+    impossible_by: Floats
+    reasons: NDArray[np.str_]
+    group: NDArray[np.str_]
+    outside: Mapping[str, Bools] = field(default_factory=dict)
+    cautions: Mapping[str, Bools] = field(default_factory=dict)
+
+    def __len__(self) -> int:
+        return len(self.possible)
+
+
+@dataclass(frozen=True)
+class Curve:
+    """One quantity along the plate, for a picture and a table."""
+
+    name: str
+    unit: str
+    values: Floats
+    meaning: str
+
+
+@dataclass(frozen=True)
+class Region:
+    """A named stretch along the plate, from `start` to `end` in m."""
+
+    name: str
+    start: float
+    end: float
+
+
+@dataclass(frozen=True)
+class Profile:
+    """What happens along one plate of one design: curves over `x` (m, shape (m,))."""
+
+    x: Floats
+    curves: tuple[Curve, ...]
+    regions: tuple[Region, ...]
+    marks: Mapping[str, float] = field(default_factory=dict)
+
+
+@dataclass(frozen=True)
+class Shape:
+    """A filled outline to scale, metres: corners of shape (k, 2), x along the flow."""
+
+    part: Literal["plate", "wire", "layer"]
+    corners: Floats
+
+
+@dataclass(frozen=True)
+class Sketch:
+    """A side view of a design to scale: outlines, the size of the view, a line of dimensions.
+
+    `repeats` tells how often the drawn passage stands in the whole (1 for a single plate).
+    """
+
+    shapes: tuple[Shape, ...]
+    width: float
+    height: float
+    caption: str
+    repeats: float = 1.0
+
+
+class Problem(ABC):
+    """A case made ready to evaluate. Designs are rows of an array in the order of `variables`."""
+
+    title: str
+    kind: str
+    variables: tuple[Variable, ...]
+    settings: tuple[Outcome, ...]
+    outcomes: tuple[Outcome, ...]
+    aims: tuple[Aim, ...]
+    limits: tuple[Limit, ...]
+    laws: tuple[Law, ...]
+    notes: tuple[str, ...]
+
+    @abstractmethod
+    def evaluate(self, designs: Floats) -> Evaluation:
+        """Evaluate `designs` of shape (n, number of variables), SI, inside the ranges.
+
+        Never raises for a design inside the ranges and never returns NaN.
+        """
+
+    @abstractmethod
+    def profile(self, design: Floats) -> Profile:
+        """What happens along the plate of one design of shape (number of variables,)."""
+
+    @abstractmethod
+    def sketch(self, design: Floats) -> Sketch:
+        """A side view to scale of one design of shape (number of variables,)."""
+
+    def outcome(self, name: str) -> Outcome:
+        """The outcome or setting called `name`.
+
+        Raises KeyError where there is none.
+        """
+        for known in (*self.outcomes, *self.settings):
+            if known.name == name:
+                return known
+        raise KeyError(name)
