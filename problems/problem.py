@@ -168,6 +168,7 @@ class Problem(ABC):
     limits: tuple[Limit, ...]
     laws: tuple[Law, ...]
     notes: tuple[str, ...]
+    source: str  # the case as given, for the run folder
 
     @abstractmethod
     def evaluate(self, designs: Floats) -> Evaluation:
@@ -183,6 +184,10 @@ class Problem(ABC):
     @abstractmethod
     def sketch(self, design: Floats) -> Sketch:
         """A side view to scale of one design of shape (number of variables,)."""
+
+    @abstractmethod
+    def remarks(self, design: Floats) -> tuple[str, ...]:
+        """Plain sentences about one design of shape (number of variables,): regimes, verdicts."""
 
     def outcome(self, name: str) -> Outcome:
         """The outcome or setting called `name`.

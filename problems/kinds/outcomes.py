@@ -1,0 +1,63 @@
+"""The names, units and meanings of everything a plate or a stack of plates can give.
+
+One list for the case file (what aims and limits may name), the evaluation and the printed table.
+"""
+
+from __future__ import annotations
+
+from problems.problem import Outcome
+
+_SHARED = (
+    Outcome("heat", "W", "heat from surface to fluid (negative: from fluid to surface)"),
+    Outcome("heat_flux", "W/m2", "heat over swept plate area"),
+    Outcome("mean_h", "W/(m2 K)", "mean heat transfer coefficient"),
+    Outcome("least_h", "W/(m2 K)", "least local heat transfer coefficient"),
+    Outcome("drag", "N", "force of the flow on plates and wires: wall shear and wire drag"),
+    Outcome("wire_drag", "N", "the part of the drag that the trip wires carry"),
+    Outcome("fan_power", "W", "power that the fan or pump draws"),
+    Outcome("heat_per_power", "1", "heat (absolute) over fan power"),
+    Outcome("flow_rate", "m3/s", "volume flow through or over the plates, at inlet density"),
+    Outcome("mass_flow", "kg/s", "mass flow through or over the plates"),
+    Outcome("outlet_temperature", "K", "mixed temperature of the fluid leaving the plates"),
+    Outcome("hottest_wall", "K", "highest surface temperature"),
+    Outcome("film_temperature", "K", "temperature at which the properties are taken"),
+    Outcome("plate_area", "m2", "swept area of all plates"),
+    Outcome("volume", "m3", "length times width times height of the plates and their gaps"),
+    Outcome("plate_mass", "kg", "mass of the plates"),
+    Outcome("onset", "m", "where transition begins; beyond the length if the plate stays laminar"),
+    Outcome("turbulent_share", "1", "share of the plate length that is turbulent"),
+    Outcome("length_reynolds", "1", "Reynolds number on the plate length"),
+    Outcome("wire_reynolds", "1", "velocity outside the layer times wire diameter over viscosity"),
+    Outcome("wire_margin", "1", "wire Reynolds number over the design value 900; 0 without a wire"),
+)
+
+_STACK = (
+    Outcome("pressure_drop", "Pa", "static pressure drop from plenum to plenum"),
+    Outcome("entrance_drop", "Pa", "part of the pressure drop: contraction and entrance"),
+    Outcome("shear_drop", "Pa", "part of the pressure drop: wall shear"),
+    Outcome("development_drop", "Pa", "part of the pressure drop: the core speeds up"),
+    Outcome("heating_drop", "Pa", "part of the pressure drop: the fluid expands as it heats"),
+    Outcome("wire_drop", "Pa", "part of the pressure drop: trip wires"),
+    Outcome("exit_drop", "Pa", "part of the pressure drop: exit (negative: pressure recovered)"),
+    Outcome("gap_reynolds", "1", "Reynolds number on hydraulic diameter (twice the gap)"),
+    Outcome("approach", "K", "surface temperature at the outlet less outlet temperature, absolute"),
+)
+
+OUTCOMES = {"plate": _SHARED, "stack": _SHARED + _STACK}
+
+_PLATE_SETTINGS = (
+    Outcome("length", "m", "plate length along the flow"),
+    Outcome("velocity", "m/s", "free-stream velocity; for a stack the mean in the gap, at inlet"),
+    Outcome("trip_position", "m", "wire from the leading edge; 0 without a wire"),
+    Outcome("trip_height", "m", "wire diameter; 0 without a wire"),
+    Outcome("width", "m", "plate width across the flow"),
+    Outcome("thickness", "m", "plate thickness"),
+)
+
+_STACK_SETTINGS = (
+    Outcome("gap", "m", "clear gap between plates"),
+    Outcome("height", "m", "height of the stack"),
+    Outcome("count", "1", "number of plates, each with its gap; real while searching"),
+)
+
+SETTINGS = {"plate": _PLATE_SETTINGS, "stack": _PLATE_SETTINGS + _STACK_SETTINGS}
