@@ -1,0 +1,568 @@
+"""Fluid properties from tables: density, viscosity, conductivity, heat capacity over temperature.
+
+A table is built once per case from CoolProp, at one pressure, and kept in the user's cache.
+Which temperature to ask for (film, wall, bulk) is the business of whoever asks.
+
+Sources: CoolProp (Bell et al. 2014, Ind. Eng. Chem. Res. 53, 2498-2508) and the reference
+equations it carries (IAPWS for water, Lemmon for dry air, ASHRAE RP-1485 for humid air).
+"""
+
+from __future__ import annotations
+
+import contextlib
+import difflib
+import hashlib
+import math
+import os
+import re
+import tempfile
+import zipfile
+import zlib
+from collections.abc import Callable
+from dataclasses import dataclass
+from functools import cached_property
+from importlib.metadata import version
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+Floats = NDArray[np.float64]
+
+CACHE_VARIABLE = "PLATEWRIGHT_CACHE"  # another folder for the tables; empty: keep none
+_FORMAT = 1  # of the cached file; goes into its name
+
+_ROWS = 6  # of a table: rho, mu, k, cp, beta, reciprocal of the speed of sound
+_LEAST_NODES, _MOST_NODES = 1024, 32768
+_TOLERANCE = 1e-6  # relative, of the straight line between two nodes
+_LEAST_SAMPLES, _MOST_SAMPLES = 32, 4096  # intervals sampled from CoolProp
+_WORST = 5e-4  # relative; a table that would be worse is refused
+_MARGIN = 0.05  # K that a table keeps away from boiling, freezing and the dew point
+_STEP = 5.0  # K; the ends of a table stand on multiples of it so that near cases share one
+
+_SYMBOLS = {
+    "D": "density",
+    "V": "viscosity",
+    "L": "thermal conductivity",
+    "C": "heat capacity",
+    "A": "speed of sound",
+}
+
+
+class FluidError(ValueError):
+    """A fluid, or a state of it, without properties.
+
+    `key` names the input at fault ("name", "pressure", "temperature", "humidity", "altitude"),
+    `value` is what was given, `allowed` says in words what can be had.
+    """
+
+    def __init__(self, key: str, value: object, allowed: str) -> None:
+        self.key, self.value, self.allowed = key, value, allowed
+        super().__init__(f"fluid {key} = {value!r}: {allowed}")
+
+
+@dataclass(frozen=True)
+class Properties:
+    """Properties at given temperatures; all arrays have the shape of the temperature.
+
+    rho [kg/m3], mu [Pa s], k [W/(m K)], cp [J/(kg K)], nu [m2/s], pr [-].
+    """
+
+    rho: Floats
+    mu: Floats
+    k: Floats
+    cp: Floats
+    nu: Floats
+    pr: Floats
+
+
+@dataclass(frozen=True, eq=False)
+class Fluid:
+    """Properties of one fluid at one `pressure` [Pa] between `low` and `high` [K].
+
+    Outside that span every method gives the value at the nearer end; `low` and `high` tell which
+    temperatures those are. `phase` is "gas" or "liquid". `saturation_temperature` [K] is where
+    the phase ends at this pressure (boiling of a liquid, condensing of a gas), `freezing_point`
+    [K] where a liquid freezes, `dew_point` [K] and `humidity_ratio` [kg/kg dry air] belong to
+    humid air; each is None where it does not apply or is not known. `values` is the table, shape
+    (6, nodes), rows as in `_ROWS`, nodes evenly spaced.
+    """
+
+    name: str
+    pressure: float
+    phase: str
+    low: float
+    high: float
+    values: Floats
+    saturation_temperature: float | None = None
+    freezing_point: float | None = None
+    dew_point: float | None = None
+    humidity_ratio: float | None = None
+
+    def at(self, temperature: ArrayLike) -> Properties:
+        """Properties at `temperature` [K], any shape; continuous, linear between nodes."""
+        node, part = self._locate(temperature)
+        rho, mu, k, cp = (self._between(row, node, part) for row in range(4))
+        return Properties(rho, mu, k, cp, mu / rho, mu * cp / k)
+
+    def expansion(self, temperature: ArrayLike) -> Floats:
+        """Thermal expansion coefficient -(d rho/d T)/rho [1/K] at `temperature` [K]."""
+        return self._between(4, *self._locate(temperature))
+
+    def sound_speed(self, temperature: ArrayLike) -> Floats:
+        """Speed of sound [m/s] at `temperature` [K]; infinite for an incompressible liquid."""
+        slowness = self._between(5, *self._locate(temperature))
+        with np.errstate(divide="ignore"):
+            return np.divide(1.0, slowness)
+
+    @cached_property
+    def _rises(self) -> Floats:
+        return np.diff(self.values, axis=1, append=self.values[:, -1:])
+
+    def _locate(self, temperature: ArrayLike) -> tuple[NDArray[np.intp], Floats]:
+        """Node at or below each temperature, and how far it lies towards the next (0 to 1)."""
+        last = self.values.shape[1] - 1
+        place = np.asarray(temperature, dtype=np.float64) - self.low
+        place = np.clip(place * (last / (self.high - self.low)), 0.0, last)
+        node = place.astype(np.intp)
+        return node, place - node
+
+    def _between(self, row: int, node: NDArray[np.intp], part: Floats) -> Floats:
+        # mode="clip" only because it is the quick one: node is already inside
+        rise = self._rises[row].take(node, mode="clip")
+        return self.values[row].take(node, mode="clip") + rise * part
+
+
+def fluid(
+    name: str,
+    pressure: float,
+    low: float,
+    high: float,
+    humidity: float | None = None,
+    reference_temperature: float | None = None,
+) -> Fluid:
+    """Property table of `name` at `pressure` [Pa] for temperatures `low` to `high` [K].
+
+    `name` is "air" (dry), "humid air", "water", a pure or pseudo-pure fluid by its name in
+    CoolProp, or one of its liquids as "INCOMP::NAME" or "INCOMP::NAME[0.3]" (fraction in the
+    basis CoolProp keeps for it). `reference_temperature` [K], the inlet's (`low` if not given),
+    decides between liquid and gas, and `humidity` is the relative humidity [0 to 1] there; the
+    humidity ratio it fixes holds for the whole table.
+
+    The span is widened a little and clipped to where CoolProp has this phase: short of boiling
+    or condensing, above freezing, and for humid air above the dew point.
+
+    Raises FluidError for an unknown fluid, or a state or property CoolProp does not have.
+    """
+    reference = low if reference_temperature is None else reference_temperature
+    name = " ".join(name.split())
+    _check(name, pressure, low, high, humidity, reference)
+    margin = max(_STEP, 0.05 * (high - low))
+    start = _STEP * math.floor((min(low, reference) - margin) / _STEP)
+    stop = _STEP * math.ceil((max(high, reference) + margin) / _STEP)
+    key = _key(name, pressure, start, stop, humidity, reference)
+    known = _load(key)
+    if known is None:
+        known = _build(_source(name, pressure, reference, humidity), start, stop)
+        _keep(key, known)
+    return known
+
+
+def standard_pressure(altitude: ArrayLike) -> Floats:
+    """Pressure [Pa] of the standard atmosphere at `altitude` [m] above sea level.
+
+    ISO 2533:1975 (from memory; the same as the U.S. Standard Atmosphere 1976 up to 20 km).
+    Raises FluidError outside -2000 m to 20000 m.
+    """
+    z = np.asarray(altitude, dtype=np.float64)
+    if not np.all((z >= -2000.0) & (z <= 20000.0)):
+        raise FluidError("altitude", altitude, "must lie between -2000 m and 20000 m")
+    height = 6356766.0 * z / (6356766.0 + z)  # geopotential
+    g_over_r = 9.80665 / 287.05287
+    below = np.minimum(height, 11000.0)
+    troposphere = 101325.0 * (1.0 - 0.0065 * below / 288.15) ** (g_over_r / 0.0065)
+    stratosphere = np.exp(-g_over_r / 216.65 * np.maximum(height - 11000.0, 0.0))
+    return np.asarray(troposphere * stratosphere)
+
+
+def _check(
+    name: str,
+    pressure: float,
+    low: float,
+    high: float,
+    humidity: float | None,
+    reference: float,
+) -> None:
+    if not (math.isfinite(pressure) and pressure > 0.0):
+        raise FluidError("pressure", pressure, "must be above 0 Pa")
+    for temperature in (low, high, reference):
+        if not (math.isfinite(temperature) and temperature > 0.0):
+            raise FluidError("temperature", temperature, "must be above 0 K")
+    if low > high:
+        raise FluidError("temperature", low, f"must not be above the high end, {high:g} K")
+    if (name.lower() == "humid air") != (humidity is not None):
+        raise FluidError("humidity", humidity, "must be given for humid air, and only for it")
+    if humidity is not None and not 0.0 <= humidity <= 1.0:
+        raise FluidError("humidity", humidity, "relative humidity must lie between 0 and 1")
+
+
+# Building a table
+
+
+@dataclass(frozen=True)
+class _Source:
+    """Where a table comes from: `sample` takes temperatures (n,) to the rows of `_SYMBOLS`.
+
+    An incompressible liquid has no row for the speed of sound. `floor` and `ceiling` [K] bound
+    the temperatures at which `sample` may be asked.
+    """
+
+    name: str
+    pressure: float
+    phase: str
+    floor: float
+    ceiling: float
+    sample: Callable[[Floats], Floats]
+    saturation_temperature: float | None = None
+    freezing_point: float | None = None
+    dew_point: float | None = None
+    humidity_ratio: float | None = None
+
+
+def _source(name: str, pressure: float, reference: float, humidity: float | None) -> _Source:
+    """The source for a fluid in the phase that it has at the `reference` temperature."""
+    if humidity is not None:
+        found = _humid_air(pressure, reference, humidity)
+    elif name.upper().startswith("INCOMP::"):
+        found = _incompressible("INCOMP::" + name[8:], pressure)
+    else:
+        found = _pure(name, pressure, reference)
+    if not found.floor - 0.1 <= reference <= found.ceiling + 0.1:
+        span = f"from {found.floor:.2f} K to {found.ceiling:.2f} K"
+        raise FluidError("temperature", reference, f"{name} at {pressure:g} Pa is known {span}")
+    return found
+
+
+def _build(source: _Source, low: float, high: float) -> Fluid:
+    from scipy.interpolate import CubicSpline
+
+    low, high = max(low, source.floor), min(high, source.ceiling)
+    if not low < high:
+        span = f"from {source.floor:.2f} K to {source.ceiling:.2f} K"
+        raise FluidError("temperature", low, f"{source.name} is known {span}")
+    spline = CubicSpline(*_sampled(source, low, high), axis=1)
+    nodes = _nodes(spline(spline.x), spline(spline.x, 2), high - low)
+    temperature = np.linspace(low, high, nodes)
+    rows = spline(temperature)
+    values = np.zeros((_ROWS, nodes))
+    values[:4] = rows[:4]
+    values[4] = -spline(temperature, 1)[0] / rows[0]
+    if len(rows) > 4:
+        values[5] = 1.0 / rows[4]
+    return Fluid(
+        source.name,
+        source.pressure,
+        source.phase,
+        low,
+        high,
+        values,
+        source.saturation_temperature,
+        source.freezing_point,
+        source.dew_point,
+        source.humidity_ratio,
+    )
+
+
+def _sampled(source: _Source, low: float, high: float) -> tuple[Floats, Floats]:
+    """Temperatures (n,) and rows (m, n), as dense as a cubic spline through them needs."""
+    from scipy.interpolate import CubicSpline
+
+    temperature = np.linspace(low, high, _LEAST_SAMPLES + 1)
+    rows = source.sample(temperature)
+    error = np.inf
+    while error > _TOLERANCE and len(temperature) <= _MOST_SAMPLES:
+        middle = 0.5 * (temperature[1:] + temperature[:-1])
+        new = source.sample(middle)
+        error = float(np.max(np.abs(CubicSpline(temperature, rows, axis=1)(middle) / new - 1.0)))
+        places = np.arange(1, len(temperature))
+        temperature = np.insert(temperature, places, middle)
+        rows = np.insert(rows, places, new, axis=1)
+    if error > _WORST:
+        span = f"changes too sharply between {low:g} K and {high:g} K for a table"
+        raise FluidError("name", source.name, f"{span} (error {error:.1e}); narrow the range")
+    return temperature, rows
+
+
+def _nodes(rows: Floats, bend: Floats, span: float) -> int:
+    """Number of nodes at which straight lines miss a curve of that `bend` by `_TOLERANCE`."""
+    worst = float(np.max(np.abs(bend) / np.abs(rows)))
+    needed = span * math.sqrt(worst / (8.0 * _TOLERANCE))
+    return math.ceil(min(max(needed, _LEAST_NODES), _MOST_NODES)) + 1
+
+
+def _props(symbol: str, temperature: Floats, pressure: float, name: str) -> Floats:
+    """One property [SI] from CoolProp at temperatures (n,)."""
+    from CoolProp import CoolProp
+
+    allowed = f"CoolProp gives no {_SYMBOLS[symbol]} for it at {pressure:g} Pa"
+    try:
+        row = np.asarray(CoolProp.PropsSI(symbol, "T", temperature, "P", pressure, name))
+    except ValueError as error:
+        raise FluidError("name", name, f"{allowed}; choose another fluid") from error
+    missing = ~(np.isfinite(row) & (row > 0.0))
+    if missing.any():
+        where = f"and {temperature[missing][0]:.2f} K; choose another fluid or span"
+        raise FluidError("name", name, f"{allowed} {where}")
+    return np.asarray(row, dtype=np.float64)
+
+
+def _pure(name: str, pressure: float, reference: float) -> _Source:
+    """A pure or pseudo-pure fluid, liquid or gas, from its equation of state."""
+    from CoolProp import CoolProp
+
+    _require_known(name)
+    critical, triple, most = (CoolProp.PropsSI(s, name) for s in ("pcrit", "ptriple", "pmax"))
+    if pressure > most:
+        raise FluidError("pressure", pressure, f"{name} is known up to {most:g} Pa")
+    floor, ceiling = CoolProp.PropsSI("Tmin", name), CoolProp.PropsSI("Tmax", name)
+    phase, saturation = "gas", None
+    if triple < pressure < critical:
+        boiling, dew = (CoolProp.PropsSI("T", "P", pressure, "Q", q, name) for q in (0, 1))
+        if boiling - 1e-6 <= reference <= dew + 1e-6:
+            where = f"{name} at {pressure:g} Pa boils between {boiling:.2f} K and {dew:.2f} K"
+            raise FluidError("temperature", reference, f"{where}: give liquid or gas")
+        phase, saturation = ("liquid", boiling) if reference < boiling else ("gas", dew)
+    elif pressure >= critical and reference < CoolProp.PropsSI("Tcrit", name):
+        phase = "liquid"
+    freezing = _freezing(name, pressure) if phase == "liquid" else None
+    if saturation is not None and phase == "liquid":
+        ceiling = saturation - _MARGIN
+    elif saturation is not None:
+        floor = max(floor, saturation + _MARGIN)
+    if freezing is not None:
+        floor = max(floor, freezing + 1e-3)
+
+    def sample(temperature: Floats) -> Floats:
+        return np.stack([_props(symbol, temperature, pressure, name) for symbol in _SYMBOLS])
+
+    return _Source(
+        name, pressure, phase, floor, ceiling, sample, saturation, freezing_point=freezing
+    )
+
+
+def _freezing(name: str, pressure: float) -> float:
+    """Melting temperature [K] of a pure fluid; its triple point where no melting line is known."""
+    from CoolProp import CoolProp
+
+    state = CoolProp.AbstractState("HEOS", name.removeprefix("HEOS::"))
+    with contextlib.suppress(ValueError):
+        if state.has_melting_line():
+            return float(state.melting_line(CoolProp.iT, CoolProp.iP, pressure))
+    return float(CoolProp.PropsSI("Ttriple", name))
+
+
+def _incompressible(name: str, pressure: float) -> _Source:
+    """One of CoolProp's incompressible liquids and solutions: oils, brines, glycols."""
+    from CoolProp import CoolProp
+
+    _require_known_liquid(name)
+    floor, ceiling = CoolProp.PropsSI("Tmin", name), CoolProp.PropsSI("Tmax", name)
+    freezing = None
+    with contextlib.suppress(ValueError):
+        freezing = float(CoolProp.PropsSI("T_freeze", "T", ceiling, "P", 1e9, name))
+        floor = max(floor, freezing + _MARGIN)
+    saturation = _boiling(name, pressure, floor, ceiling)
+    if saturation is not None:
+        ceiling = saturation - _MARGIN
+    symbols = [symbol for symbol in _SYMBOLS if symbol != "A"]
+
+    def sample(temperature: Floats) -> Floats:
+        return np.stack([_props(symbol, temperature, pressure, name) for symbol in symbols])
+
+    return _Source(
+        name, pressure, "liquid", floor, ceiling, sample, saturation, freezing_point=freezing
+    )
+
+
+def _boiling(name: str, pressure: float, floor: float, ceiling: float) -> float | None:
+    """Where the vapour pressure of an incompressible liquid reaches `pressure`, by bisection."""
+    from CoolProp import CoolProp
+
+    def boils(temperature: float) -> bool:
+        with contextlib.suppress(ValueError):
+            return bool(CoolProp.PropsSI("P", "T", temperature, "Q", 0, name) > pressure)
+        return False
+
+    if not boils(ceiling):
+        return None
+    for _ in range(40):
+        middle = 0.5 * (floor + ceiling)
+        floor, ceiling = (floor, middle) if boils(middle) else (middle, ceiling)
+    return ceiling
+
+
+def _humid_air(pressure: float, reference: float, humidity: float) -> _Source:
+    """Humid air of one humidity ratio: that of the relative `humidity` at `reference`."""
+    from CoolProp import CoolProp
+
+    try:
+        ratio, dew = (
+            float(CoolProp.HAPropsSI(s, "T", reference, "P", pressure, "R", humidity))
+            for s in ("W", "Tdp")
+        )
+    except ValueError as error:
+        where = f"no humid air at {reference:g} K and {pressure:g} Pa"
+        raise FluidError("humidity", humidity, f"{where} in CoolProp: {error}") from error
+    dry = ratio == 0.0
+
+    def sample(temperature: Floats) -> Floats:
+        volume, mu, k, cp = (
+            np.asarray(CoolProp.HAPropsSI(s, "T", temperature, "P", pressure, "W", ratio))
+            for s in ("Vha", "M", "K", "cp_ha")
+        )
+        gas = pressure * volume / temperature  # specific gas constant
+        sound = np.sqrt(cp / (cp - gas) * pressure * volume)  # ideal gas
+        return np.stack([1.0 / volume, mu, k, cp, sound])
+
+    floor, ceiling = 130.0 + _MARGIN, 623.15 - _MARGIN  # bounds of CoolProp's humid air
+    return _Source(
+        "humid air",
+        pressure,
+        "gas",
+        floor if dry else max(floor, dew),
+        ceiling,
+        sample,
+        dew_point=None if dry else dew,
+        humidity_ratio=ratio,
+    )
+
+
+# Names
+
+
+def _require_known(name: str) -> None:
+    """Raises FluidError for a fluid that CoolProp does not know, with the nearest that it does."""
+    from CoolProp import CoolProp
+
+    plain = name.removeprefix("HEOS::")
+    if "::" not in plain and "&" not in plain:
+        with contextlib.suppress(ValueError):
+            CoolProp.PropsSI("Tcrit", name)
+            return
+    names = ["air", "humid air", "water"]
+    for known in CoolProp.FluidsList():
+        names += [known, *CoolProp.get_aliases(known)]
+    names += [f"INCOMP::{known}" for known in sum(_liquids(), ())]
+    raise FluidError("name", name, _nearest(plain, names))
+
+
+def _liquids() -> tuple[tuple[str, ...], tuple[str, ...]]:
+    """Names of CoolProp's incompressible liquids: pure, and solutions that need a fraction."""
+    from CoolProp import CoolProp
+
+    pure, solutions = (
+        tuple(CoolProp.get_global_param_string(f"incompressible_list_{sort}").split(","))
+        for sort in ("pure", "solution")
+    )
+    return pure, solutions
+
+
+def _require_known_liquid(name: str) -> None:
+    """Raises FluidError for an unknown incompressible liquid, or a fraction it does not have."""
+    from CoolProp import CoolProp
+
+    pure, solutions = _liquids()
+    bare = re.split(r"\[|-(?=[\d.]+%$)", name.removeprefix("INCOMP::"))[0]
+    if bare not in pure + solutions:
+        names = [f"INCOMP::{known}" for known in pure + solutions]
+        raise FluidError("name", name, _nearest(f"INCOMP::{bare}", names))
+    if bare in solutions:
+        low, high = (
+            CoolProp.PropsSI(f"fraction_{end}", f"INCOMP::{bare}") for end in ("min", "max")
+        )
+        example = f"INCOMP::{bare}[{0.5 * (low + high):g}]"
+        wanted = f"a solution: give its fraction from {low:g} to {high:g}, as {example}"
+        try:
+            CoolProp.PropsSI("T_freeze", "T", 300.0, "P", 1e9, name)
+        except ValueError as error:
+            if bare == name.removeprefix("INCOMP::") or "composition" in str(error):
+                raise FluidError("name", name, wanted) from error
+
+
+def _nearest(name: str, names: list[str]) -> str:
+    folded = {known.casefold(): known for known in reversed(names)}
+    near = difflib.get_close_matches(name.casefold(), list(folded), n=4, cutoff=0.6)
+    hint = f"; nearest: {', '.join(folded[n] for n in near)}" if near else ""
+    return f"must be air, humid air, water or a fluid that CoolProp knows{hint}"
+
+
+# The cache
+
+
+def _key(*facts: object) -> str:
+    """All that a table depends on, as text."""
+    shape = (_FORMAT, version("CoolProp"), _TOLERANCE, _LEAST_NODES, _MOST_NODES, _MOST_SAMPLES)
+    return repr((*shape, *(float(f) if isinstance(f, int) else f for f in facts)))
+
+
+def _place(key: str) -> Path | None:
+    """The file that keeps the table of `key`; None where no cache is wanted."""
+    folder = os.environ.get(CACHE_VARIABLE)
+    if folder == "":
+        return None
+    if folder is None:
+        from platformdirs import user_cache_path
+
+        folder = str(user_cache_path("platewright", appauthor=False))
+    digest = hashlib.sha256(key.encode()).hexdigest()[:24]
+    return Path(folder).expanduser() / f"fluid-{digest}.npz"
+
+
+def _optional(value: float) -> float | None:
+    return None if math.isnan(value) else float(value)
+
+
+def _load(key: str) -> Fluid | None:
+    """The table kept for `key`, or None if there is none that can be trusted."""
+    place = _place(key)
+    if place is None:
+        return None
+    try:
+        with np.load(place, allow_pickle=False) as kept:
+            texts, numbers, values = kept["texts"], kept["numbers"], kept["values"]
+        stated, name, phase = (str(text) for text in texts)
+        pressure, low, high, *facts = (float(number) for number in numbers)
+        saturation, freezing, dew, ratio = (_optional(fact) for fact in facts)
+    except (OSError, ValueError, KeyError, EOFError, zipfile.BadZipFile, zlib.error):
+        return None
+    sound = values.ndim == 2 and len(values) == _ROWS and values.dtype == np.float64
+    if not (stated == key and sound and low < high and np.isfinite(values).all()):
+        return None
+    return Fluid(name, pressure, phase, low, high, values, saturation, freezing, dew, ratio)
+
+
+def _keep(key: str, made: Fluid) -> None:
+    """Keep a table for next time; without a word where the folder cannot be written."""
+    place = _place(key)
+    if place is None:
+        return
+    facts = (made.saturation_temperature, made.freezing_point, made.dew_point, made.humidity_ratio)
+    numbers = [made.pressure, made.low, made.high]
+    numbers += [math.nan if fact is None else fact for fact in facts]
+    try:
+        place.parent.mkdir(parents=True, exist_ok=True)
+        handle, draft = tempfile.mkstemp(dir=place.parent, suffix=".part")
+    except OSError:
+        return
+    try:
+        with os.fdopen(handle, "wb") as file:
+            np.savez(
+                file,
+                texts=np.array([key, made.name, made.phase]),
+                numbers=np.array(numbers),
+                values=made.values,
+            )
+        os.replace(draft, place)
+    except OSError:
+        with contextlib.suppress(OSError):
+            os.unlink(draft)
