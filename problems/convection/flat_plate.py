@@ -1,7 +1,7 @@
 """The boundary layer on one plate, laminar and turbulent: friction, heat, thicknesses.
 
 Pure functions on arrays, constant properties, Reynolds numbers on the free stream. Where one
-regime gives way to the other is the business of `transition`, what lies across the gap of `passage`.
+regime gives way to the other is the business of `transition`; the far wall is that of `passage`.
 
 Range of validity: steady low-speed stream without pressure gradient, Pr from 0.5 upward.
 """

@@ -169,19 +169,20 @@ def onset(natural: Floats, turbulence: Floats, wire: Wire | None) -> Onset:
         return Onset(natural, natural, length_scale(natural), np.zeros_like(natural))
     noisy = np.hypot(turbulence, wire.added_turbulence())
     early = natural * onset_re_x(noisy) / onset_re_x(turbulence)
-    moved = _soft_least(natural, -_soft_least(-early, -wire.re_x, signed=True))
+    moved = np.minimum(natural, _soft_most(early, wire.re_x))
     forced = wire.trips() * wire.holds()
-    place = _soft_least(wire.re_x, natural)
+    place = np.minimum(wire.re_x, natural)
     re_x = moved * (place / moved) ** forced
     length = length_scale(re_x)
     length = length * (FORCED_LENGTH / COMPLETE / length) ** forced
     return Onset(natural, re_x, length, forced)
 
 
-def _soft_least(first: Floats, second: Floats, signed: bool = False) -> Floats:
-    """The lesser of two positive numbers (signed: two negative), its corner rounded."""
-    if signed:
-        logs = np.logaddexp(np.log(-first) / _SOFT, np.log(-second) / _SOFT)
-        return -np.exp(_SOFT * logs)
-    logs = np.logaddexp(-np.log(first) / _SOFT, -np.log(second) / _SOFT)
-    return np.exp(-_SOFT * logs)
+def _soft_least(first: Floats, second: Floats) -> Floats:
+    """The lesser of two positive numbers, its corner rounded over some per cent."""
+    return 1.0 / _soft_most(1.0 / first, 1.0 / second)
+
+
+def _soft_most(first: Floats, second: Floats) -> Floats:
+    """The greater of two positive numbers, its corner rounded over some per cent."""
+    return np.exp(_SOFT * np.logaddexp(np.log(first) / _SOFT, np.log(second) / _SOFT))

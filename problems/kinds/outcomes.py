@@ -16,13 +16,9 @@ _SHARED = (
     Outcome("wire_drag", "N", "the part of the drag that the trip wires carry"),
     Outcome("fan_power", "W", "power that the fan or pump draws"),
     Outcome("heat_per_power", "1", "heat (absolute) over fan power"),
-    Outcome("flow_rate", "m3/s", "volume flow through or over the plates, at inlet density"),
-    Outcome("mass_flow", "kg/s", "mass flow through or over the plates"),
-    Outcome("outlet_temperature", "K", "mixed temperature of the fluid leaving the plates"),
     Outcome("hottest_wall", "K", "highest surface temperature"),
     Outcome("film_temperature", "K", "temperature at which the properties are taken"),
     Outcome("plate_area", "m2", "swept area of all plates"),
-    Outcome("volume", "m3", "length times width times height of the plates and their gaps"),
     Outcome("plate_mass", "kg", "mass of the plates"),
     Outcome("onset", "m", "where transition begins; beyond the length if the plate stays laminar"),
     Outcome("turbulent_share", "1", "share of the plate length that is turbulent"),
@@ -32,6 +28,10 @@ _SHARED = (
 )
 
 _STACK = (
+    Outcome("volume", "m3", "length times width times height of the plates and their gaps"),
+    Outcome("outlet_temperature", "K", "mixed temperature of the fluid leaving the plates"),
+    Outcome("mass_flow", "kg/s", "mass flow through the stack"),
+    Outcome("flow_rate", "m3/s", "volume flow through the stack, at inlet density"),
     Outcome("pressure_drop", "Pa", "static pressure drop from plenum to plenum"),
     Outcome("entrance_drop", "Pa", "part of the pressure drop: contraction and entrance"),
     Outcome("shear_drop", "Pa", "part of the pressure drop: wall shear"),

@@ -1,0 +1,392 @@
+"""One walk along the plate: laminar, transitional, turbulent, merged.
+
+Joins the laws of `flat_plate`, `transition`, `entrance` and `passage` into means and local values,
+in Reynolds numbers only. Temperatures, watts and pascals are left to the kinds.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from functools import cache
+from typing import Protocol
+
+import numpy as np
+from numpy.typing import NDArray
+
+from problems.convection import entrance, flat_plate, passage, transition
+from problems.convection.transition import Onset, Wire
+
+Floats = NDArray[np.float64]
+
+_XI_END = 4.5  # intermittency there is 0.9998: the layer counts as turbulent
+_IN_TRANSITION, _IN_TURBULENCE = 7, 7  # Gauss points in each stretch
+_MERGED_LAMINAR = 0.0025  # Re_x over Re_D^2 where laminar layers have met
+
+
+@dataclass(frozen=True)
+class Surface:
+    """One swept wall of each design, in Reynolds numbers on the nominal velocity; shape (n,).
+
+    `re_l` on the length; `re_d` on hydraulic diameter, None for a plate in a free stream; `pr`;
+    `re_rough` U k_s/nu, None if smooth; `natural` the onset Re_x without a wire; `turbulence` in
+    percent; `wire_x`, `wire_k` U x/nu and U k/nu of a wire, None without; `flux` for uniform wall
+    flux instead of uniform wall temperature.
+    """
+
+    re_l: Floats
+    pr: Floats
+    natural: float
+    turbulence: float
+    re_d: Floats | None = None
+    re_rough: Floats | None = None
+    wire_x: Floats | None = None
+    wire_k: Floats | None = None
+    drag_coefficient: float = 1.0
+    flux: bool = False
+
+    def part(self, index: NDArray[np.intp]) -> Surface:
+        """The same for some of the designs, as columns of shape (k, 1) for use with stations."""
+        return replace(
+            self,
+            re_l=self.re_l[index, None],
+            pr=self.pr[index, None],
+            re_d=None if self.re_d is None else self.re_d[index, None],
+            re_rough=None if self.re_rough is None else self.re_rough[index, None],
+            wire_x=None,
+            wire_k=None,
+        )
+
+
+@dataclass(frozen=True)
+class Sweep:
+    """What the walk gives; shape (n,). Friction factors and Stanton numbers on nominal velocity.
+
+    `friction` and `stanton` are means over the length (flux: one over the mean resistance),
+    `least_stanton` the worst spot, `outlet_stanton` the last; `wall_high` is the highest value along
+    the plate of (T_wall - T_inlet) rho cp u / q for uniform flux; `wire_friction` is the wire's drag
+    in the same terms as `friction`; `momentum_factor` is the outlet's; `turbulent_share` is of the
+    length.
+    """
+
+    friction: Floats
+    stanton: Floats
+    least_stanton: Floats
+    outlet_stanton: Floats
+    wall_high: Floats
+    wire_friction: Floats
+    momentum_factor: Floats
+    turbulent_share: Floats
+    onset: Onset
+    sustains: Floats
+    wire: Wire | None
+    re_theta_end: Floats
+
+
+class Laminar(Protocol):
+    """A laminar layer: local values and their sums from the leading edge, at Re_x."""
+
+    def friction(self, re_x: Floats) -> Floats:
+        """Local friction factor."""
+
+    def stanton(self, re_x: Floats) -> Floats:
+        """Local Stanton number."""
+
+    def friction_sum(self, re_x: Floats) -> Floats:
+        """Integral of the friction factor over Re_x."""
+
+    def heat_sum(self, re_x: Floats) -> Floats:
+        """Integral of the Stanton number over Re_x (flux: of one over it)."""
+
+
+class PlateLaminar:
+    """Laminar layer on a plate in a free stream."""
+
+    def __init__(self, surface: Surface) -> None:
+        self._flux = surface.flux
+        constant = flat_plate.laminar_heat_constant(surface.pr, surface.flux)
+        self._stanton = constant / surface.pr
+
+    def friction(self, re_x: Floats) -> Floats:
+        return flat_plate.laminar_friction(re_x)
+
+    def stanton(self, re_x: Floats) -> Floats:
+        return self._stanton / np.sqrt(re_x)
+
+    def friction_sum(self, re_x: Floats) -> Floats:
+        return 2.0 * flat_plate.laminar_re_theta(re_x)
+
+    def heat_sum(self, re_x: Floats) -> Floats:
+        if self._flux:
+            return re_x**1.5 / (1.5 * self._stanton)
+        return 2.0 * self._stanton * np.sqrt(re_x)
+
+
+class PassageLaminar:
+    """Laminar flow developing between two plates."""
+
+    def __init__(self, surface: Surface) -> None:
+        if surface.re_d is None:
+            raise ValueError("a passage needs its Reynolds number on hydraulic diameter")
+        self._flux = surface.flux
+        self._re_d = surface.re_d
+        self._peclet = surface.re_d * surface.pr
+        self._root_pr = np.sqrt(surface.pr)
+        make = entrance.resistance_flux if surface.flux else entrance.nusselt_temperature
+        self._heat = make(surface.pr)
+
+    def friction(self, re_x: Floats) -> Floats:
+        return entrance.shear_local(np.sqrt(re_x) / self._re_d) / self._re_d
+
+    def stanton(self, re_x: Floats) -> Floats:
+        local = self._heat.local(np.sqrt(re_x) / (self._re_d * self._root_pr))
+        return 1.0 / (local * self._peclet) if self._flux else local / self._peclet
+
+    def friction_sum(self, re_x: Floats) -> Floats:
+        return re_x * entrance.shear_mean(np.sqrt(re_x) / self._re_d) / self._re_d
+
+    def heat_sum(self, re_x: Floats) -> Floats:
+        mean = self._heat.mean(np.sqrt(re_x) / (self._re_d * self._root_pr))
+        return re_x * (mean * self._peclet if self._flux else mean / self._peclet)
+
+
+def sweep(surface: Surface) -> Sweep:
+    """Walk along every plate; see `Surface` and `Sweep` for shapes and units."""
+    laminar = laminar_layer(surface)
+    sustains = np.ones_like(surface.re_l)
+    natural = np.full_like(surface.re_l, surface.natural)
+    if surface.re_d is not None:
+        sustains = passage.sustains(surface.re_d)
+        # merged layers in a passage that sustains turbulence do not stay laminar
+        natural = 1.0 / (1.0 / natural + 1.0 / (_MERGED_LAMINAR * surface.re_d**2))
+    wire = _wire(surface)
+    onset = transition.onset(natural, surface.turbulence, wire)
+    ahead = np.minimum(onset.re_x, surface.re_l)
+    totals = _Totals(surface, laminar, ahead)
+    turbulent_here = np.zeros_like(surface.re_l)
+    if wire is not None:
+        turbulent_here = transition.intermittency((wire.re_x - onset.re_x) / onset.length)
+    step = np.zeros_like(surface.re_l) if wire is None else wire.thickening(turbulent_here)
+    re_theta = _re_theta_at(surface, onset, wire, step * (1.0 - turbulent_here), ahead)
+    momentum = _laminar_momentum(surface)
+    index = np.flatnonzero((onset.re_x < surface.re_l) & (sustains > 0.0))
+    if index.size:
+        momentum[index], re_theta[index] = _behind_onset(
+            surface, onset, sustains, re_theta, index, totals, momentum[index]
+        )
+    speed_up = 1.0 if wire is None else wire.speed_up
+    return Sweep(
+        friction=totals.friction / surface.re_l,
+        stanton=surface.re_l / totals.heat if surface.flux else totals.heat / surface.re_l,
+        least_stanton=totals.least,
+        outlet_stanton=totals.last,
+        wall_high=totals.wall_high,
+        wire_friction=2.0 * step * speed_up / surface.re_l,
+        momentum_factor=momentum,
+        turbulent_share=totals.turbulent / surface.re_l,
+        onset=onset,
+        sustains=sustains,
+        wire=wire,
+        re_theta_end=re_theta,
+    )
+
+
+class _Totals:
+    """Sums over the length and extremes along it, begun with the laminar part."""
+
+    def __init__(self, surface: Surface, laminar: Laminar, ahead: Floats) -> None:
+        self._surface = surface
+        self.friction = laminar.friction_sum(ahead)
+        self.heat = laminar.heat_sum(ahead)
+        self.turbulent = np.zeros_like(ahead)
+        self.least = laminar.stanton(ahead)
+        self.last = self.least.copy()
+        self.wall_high = np.zeros_like(ahead)
+        if surface.flux:
+            self.wall_high = self._wall(surface, ahead, self.least)
+
+    @staticmethod
+    def _wall(surface: Surface, re_x: Floats, stanton: Floats) -> Floats:
+        """Wall above inlet temperature times rho cp u / q."""
+        excess = 1.0 / stanton
+        return excess if surface.re_d is None else excess + 4.0 * re_x / surface.re_d
+
+    def add(
+        self,
+        index: NDArray[np.intp],
+        columns: Surface,
+        stations: tuple[Floats, Floats, Floats, Floats, Floats],
+    ) -> None:
+        """Add a stretch: stations (k, m) of Re_x, weight, cf, St and intermittency."""
+        re_x, weight, cf, stanton, gamma = stations
+        self.friction[index] += np.sum(weight * cf, axis=1)
+        heat = 1.0 / stanton if columns.flux else stanton
+        self.heat[index] += np.sum(weight * heat, axis=1)
+        self.turbulent[index] += np.sum(weight * gamma, axis=1)
+        self.least[index] = np.minimum(self.least[index], stanton.min(axis=1))
+        self.last[index] = stanton[:, -1]
+        if columns.flux:
+            wall = self._wall(columns, re_x, stanton).max(axis=1)
+            self.wall_high[index] = np.maximum(self.wall_high[index], wall)
+
+
+def laminar_layer(surface: Surface) -> Laminar:
+    """The laminar layer on this sort of surface."""
+    return PlateLaminar(surface) if surface.re_d is None else PassageLaminar(surface)
+
+
+def laminar_thickness(re_x: Floats, re_d: Floats | None) -> Floats:
+    """Re_theta [-] of the laminar layer at Re_x; between plates at most the parabola's.
+
+    The thinning of a layer under an accelerating core and the faster core nearly cancel in
+    Re_theta (Thwaites' method, 5 % at a core 20 % faster), so the plate's value serves until the
+    layers meet; the parabola has theta = s/15, Re_theta = 0.05 Re_D.
+    """
+    plate = flat_plate.laminar_re_theta(re_x)
+    if re_d is None:
+        return plate
+    return plate / (1.0 + (plate / (0.05 * re_d)) ** 4) ** 0.25
+
+
+def _wire(surface: Surface) -> Wire | None:
+    """The wire with what it meets at its place."""
+    if surface.wire_x is None or surface.wire_k is None:
+        return None
+    re_x = np.maximum(surface.wire_x, 1e-6 * surface.re_l)
+    re_d = surface.re_d
+    speed_up, blockage = np.ones_like(re_x), np.zeros_like(re_x)
+    if re_d is not None:
+        speed_up = entrance.core_velocity(np.sqrt(re_x) / re_d)
+        blockage = 4.0 * surface.wire_k / re_d  # wires on both walls of the gap
+    behind_end = flat_plate.smooth_step(re_x / surface.re_l, 1.0, 1.02)
+    return Wire(
+        re_x=re_x,
+        re_height=surface.wire_k,
+        speed_up=speed_up,
+        re_theta=laminar_thickness(re_x, re_d),
+        blockage=blockage,
+        on_plate=1.0 - behind_end,
+        drag_coefficient=surface.drag_coefficient,
+    )
+
+
+def _re_theta_at(
+    surface: Surface, onset: Onset, wire: Wire | None, step: Floats, re_x: Floats
+) -> Floats:
+    """Re_theta of the laminar layer where it ends, with the wire's step carried along."""
+    if wire is None:
+        return laminar_thickness(re_x, surface.re_d)
+    place = np.minimum(wire.re_x, re_x)
+    grown = (laminar_thickness(place, surface.re_d) + step) ** 2
+    return np.sqrt(grown + flat_plate.BLASIUS**2 * (re_x - place))
+
+
+def _laminar_momentum(surface: Surface) -> Floats:
+    if surface.re_d is None:
+        return np.ones_like(surface.re_l)
+    return entrance.momentum_factor(np.sqrt(surface.re_l) / surface.re_d)
+
+
+def _behind_onset(
+    surface: Surface,
+    onset: Onset,
+    sustains: Floats,
+    re_theta: Floats,
+    index: NDArray[np.intp],
+    totals: _Totals,
+    laminar_momentum: Floats,
+) -> tuple[Floats, Floats]:
+    """Add the transitional and the turbulent stretch; outlet momentum factor and Re_theta."""
+    columns = surface.part(index)
+    laminar = laminar_layer(columns)
+    re_t, length = onset.re_x[index, None], onset.length[index, None]
+    weight = sustains[index, None]
+    start = re_theta[index, None]
+    xi_end = np.minimum((columns.re_l - re_t) / length, _XI_END)
+    fractions, weights, collect = _gauss(_IN_TRANSITION)
+    gamma = transition.intermittency(xi_end * fractions)
+    re_x = re_t + length * xi_end * fractions
+    run = length * xi_end
+    thickness, end = _grow(re_x, gamma, start, run, collect, weights)
+    cf, stanton = mixed(columns, laminar, re_x, thickness, gamma * weight)
+    totals.add(index, columns, (re_x, run * weights, cf, stanton, gamma * weight))
+    # from here on turbulent: stations spread evenly in ln Re_theta
+    re_e = re_t + run
+    last = flat_plate.turbulent_growth(end, columns.re_l - re_e)
+    fractions, weights, _ = _gauss(_IN_TURBULENCE)
+    spread = np.log(last / end)
+    thickness = end * np.exp(spread * np.append(fractions, 1.0))
+    weights = np.append(weights, 0.0)  # the outlet itself, for the extremes
+    re_x = re_e + flat_plate.turbulent_run(thickness) - flat_plate.turbulent_run(end)
+    run = 2.0 / flat_plate.turbulent_friction(thickness) * thickness * spread
+    gamma = np.broadcast_to(transition.intermittency(xi_end) * weight, re_x.shape)
+    cf, stanton = mixed(columns, laminar, re_x, thickness, gamma)
+    totals.add(index, columns, (re_x, run * weights, cf, stanton, gamma))
+    momentum = laminar_momentum
+    if columns.re_d is not None:
+        fanning = passage.developed_friction(columns.re_d, np.zeros_like(columns.re_d))
+        full = passage.turbulent_momentum_factor(last, columns.re_d, fanning)[:, 0]
+        momentum = momentum + gamma[:, -1] * (full - momentum)
+    return momentum, last[:, 0]
+
+
+def _grow(
+    re_x: Floats,
+    gamma: Floats,
+    start: Floats,
+    run: Floats,
+    collect: Floats,
+    weights: Floats,
+) -> tuple[Floats, Floats]:
+    """Re_theta at the stations and at the end of transition, d Re_theta / d Re_x = cf/2.
+
+    Picard iteration on Gauss points; the turbulent cf depends on Re_theta so weakly that four
+    rounds leave 1e-4.
+    """
+    calm = 0.5 * (1.0 - gamma) * flat_plate.laminar_friction(re_x)
+    thickness = start + (run * 0.5 * flat_plate.turbulent_friction(start * 1.5) * gamma) @ collect.T
+    for _ in range(4):
+        growth = calm + 0.5 * gamma * flat_plate.turbulent_friction(thickness)
+        thickness = start + run * (growth @ collect.T)
+    growth = calm + 0.5 * gamma * flat_plate.turbulent_friction(thickness)
+    return thickness, start + run * (growth @ weights)[:, None]
+
+
+def mixed(
+    surface: Surface, laminar: Laminar, re_x: Floats, re_theta: Floats, gamma: Floats
+) -> tuple[Floats, Floats]:
+    """Local cf and St at stations (k, m): laminar and turbulent mixed by intermittency."""
+    cf, stanton = laminar.friction(re_x), laminar.stanton(re_x)
+    cf_full, stanton_full = turbulent(surface, re_x, re_theta)
+    return cf + gamma * (cf_full - cf), stanton + gamma * (stanton_full - stanton)
+
+
+def turbulent(surface: Surface, re_x: Floats, re_theta: Floats) -> tuple[Floats, Floats]:
+    """Local cf and St of the turbulent layer, in a passage joined to developed flow."""
+    cf = flat_plate.turbulent_friction(re_theta)
+    stanton = flat_plate.turbulent_stanton(cf, surface.pr)
+    if surface.re_rough is not None:
+        cf, share = flat_plate.rough_friction(cf, re_x, surface.re_rough)
+        rough = flat_plate.rough_stanton(cf, surface.pr, surface.re_rough)
+        stanton = stanton + share * np.maximum(rough - stanton, 0.0)
+    if surface.re_d is None:
+        return cf, stanton
+    re_d = surface.re_d
+    relative = np.zeros_like(re_d) if surface.re_rough is None else surface.re_rough / re_d
+    speed_up = passage.core_speed_up(re_theta, re_d)
+    cf, stanton = cf * speed_up**2, stanton * speed_up
+    share = passage.merged(re_theta, re_d)
+    developed = passage.developed_nusselt(re_d, surface.pr, relative) / (re_d * surface.pr)
+    developed = developed * passage.local_entrance(re_x / re_d)
+    cf = cf + share * (passage.developed_friction(re_d, relative) - cf)
+    return cf, stanton + share * (developed - stanton)
+
+
+@cache
+def _gauss(points: int) -> tuple[Floats, Floats, Floats]:
+    """Gauss points on 0..1, weights, and the matrix of integrals from 0 to each point."""
+    nodes, weights = np.polynomial.legendre.leggauss(points)
+    nodes, weights = 0.5 * (nodes + 1.0), 0.5 * weights
+    powers = np.arange(points)
+    fit = np.linalg.inv(nodes[:, None] ** powers)
+    collect = (nodes[:, None] ** (powers + 1) / (powers + 1)) @ fit
+    return nodes, weights, collect

@@ -1,0 +1,98 @@
+"""Where the assumptions of the model end, design by design, and the usual cautions of the trade.
+
+Masks only; the general safety words are in `GENERAL`, printed by every command that sizes something.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+
+import numpy as np
+
+from problems.case import Case
+from problems.convection.flat_plate import DISPLACEMENT
+from problems.convection.fluids import Fluid
+from problems.kinds.swept import GRAVITY, Walked
+from problems.problem import Bools, Floats
+
+GENERAL = (
+    "Correlations are within 10 to 25 % of measurements at best: check the chosen design by test.",
+    "Hot surfaces burn and fans injure: guard both, and lock the drive out before work on it.",
+    "Ducts and casings under pressure, and liquids in closed circuits, need relief and inspection.",
+    "Local codes and licensed practice decide; this is a sizing aid, not an approval.",
+)
+
+BUOYANT = "buoyancy counts beside the forced flow (Gr/Re^2 over 0.1)"
+FAST = "the stream is so fast that compressibility counts (Mach over 0.3)"
+CONDUCTIVE = "conduction along the stream counts (Peclet number under 100)"
+SPENT = "the outlet is within 1 % of the wall temperature: the last part of the plate does nothing"
+WET = "moisture condenses: a surface lies under the dew point"
+BOILS = "the liquid may boil at the wall"
+TALL = "the wire is taller than the boundary layer: it over-trips, and its drag is uncertain"
+DOUBTFUL = "turbulence behind the wire may not hold (Re_theta 200 to 320)"
+MARGINAL = "the wire is marginal: U k/nu between 826 and 900"
+BAND = "the passage lies in the transitional band (Re_D 2300 to 4000), where flow is unsteady"
+ROUGH = "the surface is rough enough to move transition upstream (U k_s/nu over 100)"
+DENSE = "the pressure drop is over 5 % of the absolute pressure: density varies more than assumed"
+
+
+def found(
+    case: Case,
+    fluid: Fluid,
+    settings: Mapping[str, Floats],
+    walked: Walked,
+    outcomes: Mapping[str, Floats],
+) -> dict[str, Bools]:
+    """The cautions with the designs they apply to; masks of shape (n,)."""
+    masks = _stream(case, fluid, settings, walked, outcomes) | _wire(walked)
+    surface = walked.surface
+    if surface.re_rough is not None:
+        masks[ROUGH] = surface.re_rough > 100.0
+    if surface.re_d is not None:
+        masks[BAND] = (surface.re_d > 2300.0) & (surface.re_d < 4000.0)
+        masks[DENSE] = outcomes["pressure_drop"] > 0.05 * case.fluid.pressure
+        if case.plates.surface.temperature is not None:
+            masks[SPENT] = walked.units > np.log(100.0)
+    return masks
+
+
+def _stream(
+    case: Case,
+    fluid: Fluid,
+    settings: Mapping[str, Floats],
+    walked: Walked,
+    outcomes: Mapping[str, Floats],
+) -> dict[str, Bools]:
+    """Cautions on the stream as a whole."""
+    inlet = case.fluid.temperature
+    difference = np.abs(outcomes["hottest_wall"] - inlet)
+    reach = 2.0 * settings["gap"] if "gap" in settings else settings["length"]
+    lift = GRAVITY * fluid.expansion(walked.film) * difference * reach
+    peclet = walked.surface.re_l if walked.surface.re_d is None else walked.surface.re_d
+    masks = {
+        BUOYANT: np.abs(lift) > 0.1 * walked.speed**2,
+        FAST: settings["velocity"] > 0.3 * fluid.sound_speed(walked.film),
+        CONDUCTIVE: peclet * walked.properties.pr < 100.0,
+    }
+    if fluid.dew_point is not None:
+        coldest = case.plates.surface.temperature
+        cold = np.minimum(walked.film, inlet if coldest is None else coldest)
+        masks[WET] = cold < fluid.dew_point
+    if fluid.saturation_temperature is not None and inlet < fluid.saturation_temperature:
+        masks[BOILS] = outcomes["hottest_wall"] > fluid.saturation_temperature
+    return masks
+
+
+def _wire(walked: Walked) -> dict[str, Bools]:
+    """Cautions on the trip wire."""
+    wire, onset = walked.sweep.wire, walked.sweep.onset
+    if wire is None:
+        return {}
+    there = (wire.re_x < np.minimum(onset.natural, walked.surface.re_l)) & (wire.re_height > 1.0)
+    behind = wire.re_theta + wire.thickening(np.zeros_like(wire.re_theta))
+    layers = 4.91 / DISPLACEMENT
+    return {
+        TALL: there & (wire.height_over_displacement > layers),
+        MARGINAL: there & (wire.reynolds > 826.0) & (wire.reynolds < 900.0),
+        DOUBTFUL: there & (wire.reynolds > 826.0) & (behind > 200.0) & (behind < 320.0),
+    }

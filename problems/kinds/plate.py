@@ -1,0 +1,59 @@
+"""Kind `plate`: one plate in a free stream, one face or both swept.
+
+There is no duct: the fan power is drag times velocity over efficiency, the power that the stream
+loses to the plate.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from problems.case import Case
+from problems.convection.fluids import Fluid
+from problems.kinds.swept import Settings, Walked, walk
+
+Floats = NDArray[np.float64]
+
+NOTE = (
+    "One plate in a free stream has no duct: its fan power is drag times velocity over efficiency, "
+    "the power that the stream loses to the plate. A fan that moves the whole stream draws more."
+)
+
+
+def balance(case: Case, fluid: Fluid, given: Settings) -> tuple[Walked, dict[str, Floats]]:
+    """Walk along the plates and balance heat, force and power; outcomes by name, shape (n,)."""
+    inlet, wall, flux = case.fluid.temperature, case.plates.surface.temperature, 0.0
+    if wall is None:
+        flux = case.plates.surface.flux or 0.0
+
+    def film_of(walked: Walked, _: Settings) -> Floats:
+        if wall is not None:
+            return np.full_like(walked.h, 0.5 * (inlet + wall))
+        return inlet + 0.5 * flux / walked.h
+
+    start = np.full_like(given["length"], inlet if wall is None else 0.5 * (inlet + wall))
+    walked = walk(case, fluid, given, film_of, start)
+    area = case.plates.faces * given["width"] * given["length"]
+    dynamic = 0.5 * walked.flux_density * walked.speed
+    wire_drag = walked.sweep.wire_friction * dynamic * area
+    drag = walked.sweep.friction * dynamic * area + wire_drag
+    if wall is None:
+        heat_flux, hottest = np.full_like(area, flux), wall_under_flux(walked, inlet, flux)
+    else:
+        heat_flux, hottest = walked.h * (wall - inlet), np.full_like(area, wall)
+    return walked, {
+        "heat": heat_flux * area,
+        "drag": drag,
+        "wire_drag": wire_drag,
+        "fan_power": drag * given["velocity"] / case.fan.efficiency,
+        "hottest_wall": hottest,
+        "plate_area": area,
+    }
+
+
+def wall_under_flux(walked: Walked, inlet: float, flux: float) -> Floats:
+    """Highest wall temperature [K] under a uniform flux [W/m2] (negative: out of the fluid)."""
+    if flux < 0.0:
+        return np.full_like(walked.h, inlet)  # the leading edge, where the layer begins
+    return inlet + flux / (walked.flux_density * walked.properties.cp) * walked.sweep.wall_high

@@ -1,0 +1,192 @@
+"""A case of kind `plate` or `stack` made ready to search: the `Problem` that `optim` sees.
+
+Joins variables, physics, ranges of validity, cautions and words. The balances themselves are in
+`plate` and `stack`.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from problems.case import Case
+from problems.convection import fluids
+from problems.convection.fluids import Fluid
+from problems.kinds import cautions, laws, pictures, plate, stack, words
+from problems.kinds.outcomes import OUTCOMES, SETTINGS
+from problems.kinds.swept import CHUNK, Walked, settings, variables
+from problems.problem import Aim, Evaluation, Floats, Limit, Problem, Profile, Sketch
+
+_TOUCHING = 0.8  # share of the gap that wires on both walls may take
+_MARGIN = 25.0  # K of property table beyond inlet and wall
+
+
+@dataclass(frozen=True)
+class Batch:
+    """Designs walked together: settings, walk, outcomes; arrays of shape (n,)."""
+
+    settings: dict[str, Floats]
+    walked: Walked
+    outcomes: dict[str, Floats]
+
+
+class SweptPlates(Problem):
+    """A plate in a free stream or a stack of plates; see `Problem`."""
+
+    def __init__(self, case: Case) -> None:
+        self.case = case
+        self.title, self.kind, self.source = case.title, case.kind, case.source
+        self.variables = variables(case)
+        self.settings = SETTINGS[case.kind]
+        self.outcomes = OUTCOMES[case.kind]
+        self.aims = tuple(Aim(aim.outcome, aim.sense) for aim in case.aims)
+        self.limits = tuple(Limit(lim.outcome, lim.at_least, lim.at_most) for lim in case.limits)
+        self._ranges = laws.in_use(
+            passage=case.kind == "stack",
+            wire=case.trip is not None,
+            rough=case.plates.roughness > 0.0,
+            ends=case.kind == "stack" and case.plates.ends != "none",
+        )
+        self.laws = tuple(law for law, _ in self._ranges)
+        self.notes = words.notes(case)
+        self.fluid = _fluid(case)
+
+    def evaluate(self, designs: Floats) -> Evaluation:
+        """Evaluate designs of shape (n, number of variables); see `Problem.evaluate`."""
+        designs = np.asarray(designs, dtype=float).reshape(-1, len(self.variables))
+        parts = [self._evaluate(designs[k : k + CHUNK]) for k in range(0, len(designs), CHUNK)]
+        return joined(parts) if len(parts) > 1 else parts[0]
+
+    def _evaluate(self, designs: Floats) -> Evaluation:
+        batch = self.batch(designs)
+        impossible_by, reasons = _impossible(self.fluid, batch)
+        walk = laws.Walk(batch.walked.surface, batch.walked.sweep)
+        return Evaluation(
+            settings=batch.settings,
+            outcomes=batch.outcomes,
+            possible=impossible_by == 0.0,
+            impossible_by=impossible_by,
+            reasons=reasons,
+            group=words.groups(batch.settings, walk),
+            outside={law.name: test(walk) for law, test in self._ranges},
+            cautions=cautions.found(
+                self.case, self.fluid, batch.settings, batch.walked, batch.outcomes
+            ),
+        )
+
+    def batch(self, designs: Floats) -> Batch:
+        """Walk along designs of shape (n, number of variables) and balance them."""
+        given = settings(self.case, designs)
+        if self.kind == "stack":
+            given = stack.complete(self.case, given)
+        balance = stack.balance if self.kind == "stack" else plate.balance
+        walked, outcomes = balance(self.case, self.fluid, given)
+        outcomes |= _common(self.case, given, walked, outcomes)
+        ordered = {outcome.name: outcomes[outcome.name] for outcome in self.outcomes}
+        shown = {setting.name: given[setting.name] for setting in self.settings}
+        return Batch(shown, walked, ordered)
+
+    def profile(self, design: Floats) -> Profile:
+        """Curves along the plate of one design; see `Problem.profile`."""
+        return pictures.profile(self.case, self.batch(np.atleast_2d(design)))
+
+    def sketch(self, design: Floats) -> Sketch:
+        """Side view to scale of one design; see `Problem.sketch`."""
+        return pictures.sketch(self.case, self.batch(np.atleast_2d(design)))
+
+    def remarks(self, design: Floats) -> tuple[str, ...]:
+        """Plain sentences about one design; see `Problem.remarks`."""
+        return words.remarks(self.case, self.batch(np.atleast_2d(design)))
+
+    def whole(self, design: Floats) -> tuple[Problem, Floats] | None:
+        """The same design with a whole number of plates, or None where it has one already."""
+        if self.kind != "stack" or self.case.plates.count is not None:
+            return None
+        count = float(self.batch(np.atleast_2d(design)).settings["count"][0])
+        plates = self.case.plates.model_copy(update={"height": None, "count": max(round(count), 1)})
+        return SweptPlates(self.case.model_copy(update={"plates": plates})), design
+
+
+def _common(
+    case: Case, given: dict[str, Floats], walked: Walked, outcomes: dict[str, Floats]
+) -> dict[str, Floats]:
+    """The outcomes that follow in the same way for every kind."""
+    sweep = walked.sweep
+    wired = np.zeros_like(walked.h) if sweep.wire is None else sweep.wire.reynolds
+    sides = case.plates.faces if case.kind == "plate" else 2
+    one_side = outcomes["plate_area"] / sides
+    capacity = walked.flux_density * walked.properties.cp
+    return {
+        "heat_flux": outcomes["heat"] / outcomes["plate_area"],
+        "mean_h": walked.h,
+        "least_h": sweep.least_stanton * capacity,
+        "heat_per_power": np.abs(outcomes["heat"]) / np.maximum(outcomes["fan_power"], 1e-12),
+        "film_temperature": walked.film,
+        "plate_mass": one_side * given["thickness"] * case.plates.material_density,
+        "onset": sweep.onset.re_x / walked.surface.re_l * given["length"],
+        "turbulent_share": sweep.turbulent_share,
+        "length_reynolds": walked.surface.re_l,
+        "wire_reynolds": wired,
+        "wire_margin": wired / 900.0,
+    }
+
+
+def _impossible(fluid: Fluid, batch: Batch) -> tuple[Floats, NDArray[np.str_]]:
+    """How far each design is from existing, and why; see `Evaluation`."""
+    wire = batch.walked.sweep.wire
+    touching = np.zeros_like(batch.walked.h)
+    if wire is not None:
+        touching = np.maximum(wire.blockage - _TOUCHING, 0.0)
+    span = fluid.high - fluid.low
+    extremes = [batch.outcomes["hottest_wall"], batch.walked.film]
+    if "outlet_temperature" in batch.outcomes:
+        extremes.append(batch.outcomes["outlet_temperature"])
+    beyond = np.maximum(
+        np.maximum.reduce(extremes) - fluid.high - 1e-6, fluid.low - np.minimum.reduce(extremes)
+    )
+    beyond = np.maximum(beyond / span, 0.0)
+    reasons = np.full(touching.shape, "", dtype=object)
+    reasons[beyond > 0.0] = (
+        f"temperatures leave {fluid.low:.0f} to {fluid.high:.0f} K, where {fluid.name} is known"
+    )
+    reasons[touching > 0.0] = f"the wires fill over {_TOUCHING:.0%} of the gap"
+    return touching + beyond, reasons.astype(np.str_)
+
+
+def _fluid(case: Case) -> Fluid:
+    """Property table over all temperatures that the case can meet."""
+    inlet, wall = case.fluid.temperature, case.plates.surface.temperature
+    if wall is None:
+        low, high = (
+            (inlet, inlet + 300.0)
+            if (case.plates.surface.flux or 0.0) > 0
+            else (inlet - 100.0, inlet)
+        )
+    else:
+        low, high = min(inlet, wall), max(inlet, wall)
+    return fluids.fluid(
+        case.fluid.name,
+        case.fluid.pressure,
+        low,
+        high,
+        humidity=case.fluid.humidity,
+        reference_temperature=inlet,
+    )
+
+
+def joined(parts: list[Evaluation]) -> Evaluation:
+    """Evaluations of consecutive designs as one."""
+    first = parts[0]
+
+    def mapping(name: str) -> dict[str, NDArray]:
+        keys = getattr(first, name)
+        return {key: np.concatenate([getattr(part, name)[key] for part in parts]) for key in keys}
+
+    arrays = {
+        name: np.concatenate([getattr(part, name) for part in parts])
+        for name in ("possible", "impossible_by", "reasons", "group")
+    }
+    mappings = {name: mapping(name) for name in ("settings", "outcomes", "outside", "cautions")}
+    return replace(first, **arrays, **mappings)

@@ -1,0 +1,203 @@
+"""What a plate in a free stream and a stack of plates share: variables, film temperature, wires.
+
+Turns a case into arrays of designs and walks along them with properties at the film temperature.
+The balance of forces, heat and power of each kind is left to `plate` and `stack`.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, fields, is_dataclass, replace
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from problems.case import Case, Span
+from problems.convection import transition
+from problems.convection.fluids import Fluid, Properties
+from problems.convection.sweep import Surface, Sweep, sweep
+from problems.problem import Variable
+
+Floats = NDArray[np.float64]
+Settings = Mapping[str, Floats]
+
+GRAVITY = 9.80665
+_TOLERANCE = 0.005  # K, film temperature
+_ROUNDS = 8
+CHUNK = 1024  # designs at once: the arrays of one walk then stay in the processor's cache
+
+
+@dataclass(frozen=True)
+class Walked:
+    """A walk at its own film temperature; arrays of shape (n,).
+
+    `flux_density` is rho u of the nominal velocity [kg/m2s], `speed` that velocity at film
+    density; `h` the mean coefficient; `units` the exponent of the approach to the wall
+    temperature (NTU, 0 on a plate in a free stream); temperatures in K.
+    """
+
+    surface: Surface
+    sweep: Sweep
+    film: Floats
+    properties: Properties
+    flux_density: Floats
+    speed: Floats
+    h: Floats
+    units: Floats
+
+
+def spans(case: Case) -> dict[str, tuple[Span, str]]:
+    """The quantities that a case may leave free, by variable name, each with its unit."""
+    found = {"length": (case.plates.length, "m")}
+    if case.plates.gap is not None:
+        found["gap"] = (case.plates.gap, "m")
+    found["velocity"] = (case.flow.velocity, "m/s")
+    if case.trip is not None:
+        share = case.trip.position_is_share
+        found["trip_share" if share else "trip_position"] = (
+            case.trip.position,
+            "1" if share else "m",
+        )
+        found["trip_height"] = (case.trip.height, "m")
+    return found
+
+
+_MEANING = {
+    "length": "plate length along the flow",
+    "gap": "clear gap between plates",
+    "velocity": "velocity of the stream",
+    "trip_share": "trip wire from the leading edge, share of the length",
+    "trip_position": "trip wire from the leading edge",
+    "trip_height": "diameter of the trip wire",
+}
+
+
+def variables(case: Case) -> tuple[Variable, ...]:
+    """The free quantities of a case; a range over more than a factor 3 is searched by ratio."""
+    return tuple(
+        Variable(
+            name=name,
+            unit=unit,
+            low=span.low,
+            high=span.high,
+            meaning=_MEANING[name],
+            scale="log" if span.low > 0.0 and span.high > 3.0 * span.low else "linear",
+        )
+        for name, (span, unit) in spans(case).items()
+        if not span.fixed
+    )
+
+
+def settings(case: Case, designs: Floats) -> dict[str, Floats]:
+    """Geometry and flow of every design in full, from rows of the free variables."""
+    count = len(designs)
+    free = iter(np.asarray(designs, dtype=float).T)
+    values = {
+        name: np.full(count, span.low) if span.fixed else np.ascontiguousarray(next(free))
+        for name, (span, _) in spans(case).items()
+    }
+    if "trip_share" in values:
+        values["trip_position"] = values.pop("trip_share") * values["length"]
+    for name in ("trip_position", "trip_height"):
+        values.setdefault(name, np.zeros(count))
+    values["width"] = np.full(count, case.plates.width)
+    values["thickness"] = np.full(count, case.plates.thickness)
+    return values
+
+
+def free_stream_turbulence(case: Case) -> tuple[float, float]:
+    """Turbulence level [%] and natural onset Re_x [-] of a case.
+
+    A critical Reynolds number is taken as the onset; the turbulence that would give it then
+    serves for wires too small to trip.
+    """
+    if case.fluid.critical_reynolds is not None:
+        level = transition.equivalent_turbulence(case.fluid.critical_reynolds)
+        return level, case.fluid.critical_reynolds
+    level = float(case.fluid.turbulence or 0.0)
+    return level, float(transition.onset_re_x(np.array([level]))[0])
+
+
+def walk(
+    case: Case,
+    fluid: Fluid,
+    given: Settings,
+    film_of: Callable[[Walked, Settings], Floats],
+    start: Floats,
+) -> Walked:
+    """Walk along every design with properties at the film temperature that comes out of it.
+
+    `film_of` gives the film temperature that a walk implies; from `start` the two are brought
+    together to 5 mK by secant steps. Designs that have settled are not walked again.
+    """
+    film = np.clip(start, fluid.low, fluid.high)
+    done = _walk_at(case, fluid, given, film)
+    miss = film_of(done, given) - film
+    ahead = miss
+    for _ in range(_ROUNDS):
+        active = np.flatnonzero(np.abs(ahead) > _TOLERANCE)
+        if not active.size:
+            break
+        some = {name: values[active] for name, values in given.items()}
+        moved = np.clip(film[active] + ahead[active], fluid.low, fluid.high)
+        fresh = _walk_at(case, fluid, some, moved)
+        fresh_miss = film_of(fresh, some) - moved
+        change = moved - film[active]
+        slope = (fresh_miss - miss[active]) / np.where(change == 0.0, 1.0, change)
+        done = _updated(done, active, fresh)
+        film[active], miss[active] = moved, fresh_miss
+        ahead[active] = fresh_miss / np.clip(-slope, 0.5, 2.0)
+        ahead[active] = np.where(change == 0.0, 0.0, ahead[active])
+    return done
+
+
+def _updated(whole: Any, index: NDArray[np.intp], part: Any) -> Any:
+    """`whole` with the designs at `index` taken from `part`, through all nested dataclasses."""
+    changes = {}
+    for item in fields(whole):
+        old, new = getattr(whole, item.name), getattr(part, item.name)
+        if is_dataclass(old):
+            changes[item.name] = _updated(old, index, new)
+        elif isinstance(old, np.ndarray):
+            changes[item.name] = old.copy()
+            changes[item.name][index] = new
+    return replace(whole, **changes)
+
+
+def _walk_at(case: Case, fluid: Fluid, given: Settings, film: Floats) -> Walked:
+    """One walk with properties at the given film temperatures."""
+    properties = fluid.at(film)
+    gap = given.get("gap")
+    if gap is None:
+        flux_density = properties.rho * given["velocity"]
+    else:
+        flux_density = fluid.at(np.array([case.fluid.temperature])).rho * given["velocity"]
+    per_metre = flux_density / properties.mu
+    level, natural = free_stream_turbulence(case)
+    wired = case.trip is not None
+    rough = case.plates.roughness > 0.0
+    surface = Surface(
+        re_l=per_metre * given["length"],
+        pr=properties.pr,
+        natural=natural,
+        turbulence=level,
+        re_d=None if gap is None else per_metre * 2.0 * gap,
+        re_rough=per_metre * case.plates.roughness if rough else None,
+        wire_x=per_metre * given["trip_position"] if wired else None,
+        wire_k=per_metre * given["trip_height"] if wired else None,
+        drag_coefficient=1.0 if case.trip is None else case.trip.drag_coefficient,
+        flux=case.plates.surface.flux is not None,
+    )
+    walked = sweep(surface)
+    units = np.zeros_like(film) if gap is None else 2.0 * walked.stanton * given["length"] / gap
+    return Walked(
+        surface=surface,
+        sweep=walked,
+        film=film,
+        properties=properties,
+        flux_density=flux_density,
+        speed=flux_density / properties.rho,
+        h=walked.stanton * flux_density * properties.cp,
+        units=units,
+    )
