@@ -1,24 +1,18 @@
 """Fluid properties from tables: density, viscosity, conductivity, heat capacity over temperature.
 
-A table is built once per case from CoolProp, at one pressure, and kept in the user's cache.
-Which temperature to ask for (film, wall, bulk) is the business of whoever asks.
-
-Sources: CoolProp (Bell et al. 2014, Ind. Eng. Chem. Res. 53, 2498-2508) and the reference
-equations it carries (IAPWS for water, Lemmon for dry air, ASHRAE RP-1485 for humid air).
+A table is built once per case, at one pressure, and kept in the user's cache. What CoolProp is
+asked for it is the business of `fluid_sources`; which temperature to take, of whoever asks here.
 """
 
 from __future__ import annotations
 
 import contextlib
-import difflib
 import hashlib
 import math
 import os
-import re
 import tempfile
 import zipfile
 import zlib
-from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cached_property
 from importlib.metadata import version
@@ -27,38 +21,23 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from problems.convection.fluid_sources import FluidError, Source, source_of
+
+__all__ = ["CACHE_VARIABLE", "Fluid", "FluidError", "Properties", "fluid", "standard_pressure"]
+
 Floats = NDArray[np.float64]
 
 CACHE_VARIABLE = "PLATEWRIGHT_CACHE"  # another folder for the tables; empty: keep none
 _FORMAT = 1  # of the cached file; goes into its name
 
 _ROWS = 6  # of a table: rho, mu, k, cp, beta, reciprocal of the speed of sound
+_LINE = 1e-6  # relative error of the straight line between two nodes
 _LEAST_NODES, _MOST_NODES = 1024, 32768
-_TOLERANCE = 1e-6  # relative, of the straight line between two nodes
-_LEAST_SAMPLES, _MOST_SAMPLES = 32, 4096  # intervals sampled from CoolProp
+_SAMPLING = 2e-5  # relative error of a spline through the samples, at half the final number
+_LEAST_SAMPLES, _MOST_SAMPLES = 32, 8192
+_MOST_KEPT = 200  # tables in the cache; the oldest go first
 _WORST = 5e-4  # relative; a table that would be worse is refused
-_MARGIN = 0.05  # K that a table keeps away from boiling, freezing and the dew point
 _STEP = 5.0  # K; the ends of a table stand on multiples of it so that near cases share one
-
-_SYMBOLS = {
-    "D": "density",
-    "V": "viscosity",
-    "L": "thermal conductivity",
-    "C": "heat capacity",
-    "A": "speed of sound",
-}
-
-
-class FluidError(ValueError):
-    """A fluid, or a state of it, without properties.
-
-    `key` names the input at fault ("name", "pressure", "temperature", "humidity", "altitude"),
-    `value` is what was given, `allowed` says in words what can be had.
-    """
-
-    def __init__(self, key: str, value: object, allowed: str) -> None:
-        self.key, self.value, self.allowed = key, value, allowed
-        super().__init__(f"fluid {key} = {value!r}: {allowed}")
 
 
 @dataclass(frozen=True)
@@ -113,7 +92,7 @@ class Fluid:
         """Speed of sound [m/s] at `temperature` [K]; infinite for an incompressible liquid."""
         slowness = self._between(5, *self._locate(temperature))
         with np.errstate(divide="ignore"):
-            return np.divide(1.0, slowness)
+            return np.asarray(1.0 / slowness)
 
     @cached_property
     def _rises(self) -> Floats:
@@ -163,7 +142,7 @@ def fluid(
     key = _key(name, pressure, start, stop, humidity, reference)
     known = _load(key)
     if known is None:
-        known = _build(_source(name, pressure, reference, humidity), start, stop)
+        known = _build(source_of(name, pressure, reference, humidity), start, stop)
         _keep(key, known)
     return known
 
@@ -209,41 +188,7 @@ def _check(
 # Building a table
 
 
-@dataclass(frozen=True)
-class _Source:
-    """Where a table comes from: `sample` takes temperatures (n,) to the rows of `_SYMBOLS`.
-
-    An incompressible liquid has no row for the speed of sound. `floor` and `ceiling` [K] bound
-    the temperatures at which `sample` may be asked.
-    """
-
-    name: str
-    pressure: float
-    phase: str
-    floor: float
-    ceiling: float
-    sample: Callable[[Floats], Floats]
-    saturation_temperature: float | None = None
-    freezing_point: float | None = None
-    dew_point: float | None = None
-    humidity_ratio: float | None = None
-
-
-def _source(name: str, pressure: float, reference: float, humidity: float | None) -> _Source:
-    """The source for a fluid in the phase that it has at the `reference` temperature."""
-    if humidity is not None:
-        found = _humid_air(pressure, reference, humidity)
-    elif name.upper().startswith("INCOMP::"):
-        found = _incompressible("INCOMP::" + name[8:], pressure)
-    else:
-        found = _pure(name, pressure, reference)
-    if not found.floor - 0.1 <= reference <= found.ceiling + 0.1:
-        span = f"from {found.floor:.2f} K to {found.ceiling:.2f} K"
-        raise FluidError("temperature", reference, f"{name} at {pressure:g} Pa is known {span}")
-    return found
-
-
-def _build(source: _Source, low: float, high: float) -> Fluid:
+def _build(source: Source, low: float, high: float) -> Fluid:
     from scipy.interpolate import CubicSpline
 
     low, high = max(low, source.floor), min(high, source.ceiling)
@@ -273,14 +218,14 @@ def _build(source: _Source, low: float, high: float) -> Fluid:
     )
 
 
-def _sampled(source: _Source, low: float, high: float) -> tuple[Floats, Floats]:
+def _sampled(source: Source, low: float, high: float) -> tuple[Floats, Floats]:
     """Temperatures (n,) and rows (m, n), as dense as a cubic spline through them needs."""
     from scipy.interpolate import CubicSpline
 
     temperature = np.linspace(low, high, _LEAST_SAMPLES + 1)
     rows = source.sample(temperature)
     error = np.inf
-    while error > _TOLERANCE and len(temperature) <= _MOST_SAMPLES:
+    while error > _SAMPLING and len(temperature) < _MOST_SAMPLES:
         middle = 0.5 * (temperature[1:] + temperature[:-1])
         new = source.sample(middle)
         error = float(np.max(np.abs(CubicSpline(temperature, rows, axis=1)(middle) / new - 1.0)))
@@ -294,215 +239,19 @@ def _sampled(source: _Source, low: float, high: float) -> tuple[Floats, Floats]:
 
 
 def _nodes(rows: Floats, bend: Floats, span: float) -> int:
-    """Number of nodes at which straight lines miss a curve of that `bend` by `_TOLERANCE`."""
+    """Number of nodes at which straight lines miss a curve of that `bend` by `_LINE`."""
     worst = float(np.max(np.abs(bend) / np.abs(rows)))
-    needed = span * math.sqrt(worst / (8.0 * _TOLERANCE))
+    needed = span * math.sqrt(worst / (8.0 * _LINE))
     return math.ceil(min(max(needed, _LEAST_NODES), _MOST_NODES)) + 1
-
-
-def _props(symbol: str, temperature: Floats, pressure: float, name: str) -> Floats:
-    """One property [SI] from CoolProp at temperatures (n,)."""
-    from CoolProp import CoolProp
-
-    allowed = f"CoolProp gives no {_SYMBOLS[symbol]} for it at {pressure:g} Pa"
-    try:
-        row = np.asarray(CoolProp.PropsSI(symbol, "T", temperature, "P", pressure, name))
-    except ValueError as error:
-        raise FluidError("name", name, f"{allowed}; choose another fluid") from error
-    missing = ~(np.isfinite(row) & (row > 0.0))
-    if missing.any():
-        where = f"and {temperature[missing][0]:.2f} K; choose another fluid or span"
-        raise FluidError("name", name, f"{allowed} {where}")
-    return np.asarray(row, dtype=np.float64)
-
-
-def _pure(name: str, pressure: float, reference: float) -> _Source:
-    """A pure or pseudo-pure fluid, liquid or gas, from its equation of state."""
-    from CoolProp import CoolProp
-
-    _require_known(name)
-    critical, triple, most = (CoolProp.PropsSI(s, name) for s in ("pcrit", "ptriple", "pmax"))
-    if pressure > most:
-        raise FluidError("pressure", pressure, f"{name} is known up to {most:g} Pa")
-    floor, ceiling = CoolProp.PropsSI("Tmin", name), CoolProp.PropsSI("Tmax", name)
-    phase, saturation = "gas", None
-    if triple < pressure < critical:
-        boiling, dew = (CoolProp.PropsSI("T", "P", pressure, "Q", q, name) for q in (0, 1))
-        if boiling - 1e-6 <= reference <= dew + 1e-6:
-            where = f"{name} at {pressure:g} Pa boils between {boiling:.2f} K and {dew:.2f} K"
-            raise FluidError("temperature", reference, f"{where}: give liquid or gas")
-        phase, saturation = ("liquid", boiling) if reference < boiling else ("gas", dew)
-    elif pressure >= critical and reference < CoolProp.PropsSI("Tcrit", name):
-        phase = "liquid"
-    freezing = _freezing(name, pressure) if phase == "liquid" else None
-    if saturation is not None and phase == "liquid":
-        ceiling = saturation - _MARGIN
-    elif saturation is not None:
-        floor = max(floor, saturation + _MARGIN)
-    if freezing is not None:
-        floor = max(floor, freezing + 1e-3)
-
-    def sample(temperature: Floats) -> Floats:
-        return np.stack([_props(symbol, temperature, pressure, name) for symbol in _SYMBOLS])
-
-    return _Source(
-        name, pressure, phase, floor, ceiling, sample, saturation, freezing_point=freezing
-    )
-
-
-def _freezing(name: str, pressure: float) -> float:
-    """Melting temperature [K] of a pure fluid; its triple point where no melting line is known."""
-    from CoolProp import CoolProp
-
-    state = CoolProp.AbstractState("HEOS", name.removeprefix("HEOS::"))
-    with contextlib.suppress(ValueError):
-        if state.has_melting_line():
-            return float(state.melting_line(CoolProp.iT, CoolProp.iP, pressure))
-    return float(CoolProp.PropsSI("Ttriple", name))
-
-
-def _incompressible(name: str, pressure: float) -> _Source:
-    """One of CoolProp's incompressible liquids and solutions: oils, brines, glycols."""
-    from CoolProp import CoolProp
-
-    _require_known_liquid(name)
-    floor, ceiling = CoolProp.PropsSI("Tmin", name), CoolProp.PropsSI("Tmax", name)
-    freezing = None
-    with contextlib.suppress(ValueError):
-        freezing = float(CoolProp.PropsSI("T_freeze", "T", ceiling, "P", 1e9, name))
-        floor = max(floor, freezing + _MARGIN)
-    saturation = _boiling(name, pressure, floor, ceiling)
-    if saturation is not None:
-        ceiling = saturation - _MARGIN
-    symbols = [symbol for symbol in _SYMBOLS if symbol != "A"]
-
-    def sample(temperature: Floats) -> Floats:
-        return np.stack([_props(symbol, temperature, pressure, name) for symbol in symbols])
-
-    return _Source(
-        name, pressure, "liquid", floor, ceiling, sample, saturation, freezing_point=freezing
-    )
-
-
-def _boiling(name: str, pressure: float, floor: float, ceiling: float) -> float | None:
-    """Where the vapour pressure of an incompressible liquid reaches `pressure`, by bisection."""
-    from CoolProp import CoolProp
-
-    def boils(temperature: float) -> bool:
-        with contextlib.suppress(ValueError):
-            return bool(CoolProp.PropsSI("P", "T", temperature, "Q", 0, name) > pressure)
-        return False
-
-    if not boils(ceiling):
-        return None
-    for _ in range(40):
-        middle = 0.5 * (floor + ceiling)
-        floor, ceiling = (floor, middle) if boils(middle) else (middle, ceiling)
-    return ceiling
-
-
-def _humid_air(pressure: float, reference: float, humidity: float) -> _Source:
-    """Humid air of one humidity ratio: that of the relative `humidity` at `reference`."""
-    from CoolProp import CoolProp
-
-    try:
-        ratio, dew = (
-            float(CoolProp.HAPropsSI(s, "T", reference, "P", pressure, "R", humidity))
-            for s in ("W", "Tdp")
-        )
-    except ValueError as error:
-        where = f"no humid air at {reference:g} K and {pressure:g} Pa"
-        raise FluidError("humidity", humidity, f"{where} in CoolProp: {error}") from error
-    dry = ratio == 0.0
-
-    def sample(temperature: Floats) -> Floats:
-        volume, mu, k, cp = (
-            np.asarray(CoolProp.HAPropsSI(s, "T", temperature, "P", pressure, "W", ratio))
-            for s in ("Vha", "M", "K", "cp_ha")
-        )
-        gas = pressure * volume / temperature  # specific gas constant
-        sound = np.sqrt(cp / (cp - gas) * pressure * volume)  # ideal gas
-        return np.stack([1.0 / volume, mu, k, cp, sound])
-
-    floor, ceiling = 130.0 + _MARGIN, 623.15 - _MARGIN  # bounds of CoolProp's humid air
-    return _Source(
-        "humid air",
-        pressure,
-        "gas",
-        floor if dry else max(floor, dew),
-        ceiling,
-        sample,
-        dew_point=None if dry else dew,
-        humidity_ratio=ratio,
-    )
-
-
-# Names
-
-
-def _require_known(name: str) -> None:
-    """Raises FluidError for a fluid that CoolProp does not know, with the nearest that it does."""
-    from CoolProp import CoolProp
-
-    plain = name.removeprefix("HEOS::")
-    if "::" not in plain and "&" not in plain:
-        with contextlib.suppress(ValueError):
-            CoolProp.PropsSI("Tcrit", name)
-            return
-    names = ["air", "humid air", "water"]
-    for known in CoolProp.FluidsList():
-        names += [known, *CoolProp.get_aliases(known)]
-    names += [f"INCOMP::{known}" for known in sum(_liquids(), ())]
-    raise FluidError("name", name, _nearest(plain, names))
-
-
-def _liquids() -> tuple[tuple[str, ...], tuple[str, ...]]:
-    """Names of CoolProp's incompressible liquids: pure, and solutions that need a fraction."""
-    from CoolProp import CoolProp
-
-    pure, solutions = (
-        tuple(CoolProp.get_global_param_string(f"incompressible_list_{sort}").split(","))
-        for sort in ("pure", "solution")
-    )
-    return pure, solutions
-
-
-def _require_known_liquid(name: str) -> None:
-    """Raises FluidError for an unknown incompressible liquid, or a fraction it does not have."""
-    from CoolProp import CoolProp
-
-    pure, solutions = _liquids()
-    bare = re.split(r"\[|-(?=[\d.]+%$)", name.removeprefix("INCOMP::"))[0]
-    if bare not in pure + solutions:
-        names = [f"INCOMP::{known}" for known in pure + solutions]
-        raise FluidError("name", name, _nearest(f"INCOMP::{bare}", names))
-    if bare in solutions:
-        low, high = (
-            CoolProp.PropsSI(f"fraction_{end}", f"INCOMP::{bare}") for end in ("min", "max")
-        )
-        example = f"INCOMP::{bare}[{0.5 * (low + high):g}]"
-        wanted = f"a solution: give its fraction from {low:g} to {high:g}, as {example}"
-        try:
-            CoolProp.PropsSI("T_freeze", "T", 300.0, "P", 1e9, name)
-        except ValueError as error:
-            if bare == name.removeprefix("INCOMP::") or "composition" in str(error):
-                raise FluidError("name", name, wanted) from error
-
-
-def _nearest(name: str, names: list[str]) -> str:
-    folded = {known.casefold(): known for known in reversed(names)}
-    near = difflib.get_close_matches(name.casefold(), list(folded), n=4, cutoff=0.6)
-    hint = f"; nearest: {', '.join(folded[n] for n in near)}" if near else ""
-    return f"must be air, humid air, water or a fluid that CoolProp knows{hint}"
 
 
 # The cache
 
 
-def _key(*facts: object) -> str:
+def _key(*facts: str | float | None) -> str:
     """All that a table depends on, as text."""
-    shape = (_FORMAT, version("CoolProp"), _TOLERANCE, _LEAST_NODES, _MOST_NODES, _MOST_SAMPLES)
-    return repr((*shape, *(float(f) if isinstance(f, int) else f for f in facts)))
+    made = (_FORMAT, version("CoolProp"), _LINE, _SAMPLING, _LEAST_NODES, _MOST_NODES)
+    return repr((*made, *(f if f is None or isinstance(f, str) else float(f) for f in facts)))
 
 
 def _place(key: str) -> Path | None:
@@ -563,6 +312,13 @@ def _keep(key: str, made: Fluid) -> None:
                 values=made.values,
             )
         os.replace(draft, place)
+        _thin(place.parent)
     except OSError:
         with contextlib.suppress(OSError):
             os.unlink(draft)
+
+
+def _thin(folder: Path) -> None:
+    by_age = sorted(folder.glob("fluid-*.npz"), key=lambda kept: kept.stat().st_mtime)
+    for old in by_age[:-_MOST_KEPT]:
+        old.unlink(missing_ok=True)
