@@ -38,11 +38,12 @@ def laminar_re_theta(re_x: Floats) -> Floats:
 def laminar_heat_constant(pr: Floats, flux: bool) -> Floats:
     """Constant c of the laminar law Nu_x = c Re_x^1/2.
 
-    `flux`: uniform wall flux instead of uniform wall temperature. Churchill and Ozoe 1973 (from
-    memory); all Pr, used here from 0.5 upward.
+    `flux`: uniform wall flux instead of uniform wall temperature. The form is that of Churchill
+    and Ozoe 1973 (from memory), its constants fitted anew to the similarity solution, which theirs
+    miss by 1.1 % in gases: within 0.03 % for Pr 0.5 to 1e4.
     """
-    lead, spread = (0.4637, 0.0207) if flux else (0.3387, 0.0468)
-    return lead * np.cbrt(pr) / (1.0 + (spread / pr) ** (2.0 / 3.0)) ** 0.25
+    lead, spread, power = (0.463686, 0.0414537, 0.957806) if flux else (0.338734, 0.082067, 0.93591)
+    return lead * np.cbrt(pr) / (1.0 + spread * pr**-power) ** 0.25
 
 
 def turbulent_friction(re_theta: Floats) -> Floats:

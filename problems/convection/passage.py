@@ -123,22 +123,14 @@ def contraction(porosity: Floats, ends: Literal["sharp", "smooth", "none"]) -> F
     """Contraction coefficient Cc [-] of a slot of free share `porosity` = s/(s + t).
 
     Sharp: 1/Cc = 1 + (2/pi) (1 - z^2)/z atan z with z = Cc porosity (plane jet from a slot, from
-    memory; 0.611 to 1), solved by Newton's method. Smooth ends do not contract the stream.
+    memory; 0.611 to 1), here a polynomial in (1 - porosity)^1/2 within 1e-5 of its solution.
+    Smooth ends do not contract the stream.
     """
     if ends != "sharp":
         return np.ones_like(porosity)
-    cc = 0.611 + 0.389 * porosity**3
-    for _ in range(8):
-        step = 1e-6
-        slope = (_slot(cc + step, porosity) - _slot(cc - step, porosity)) / (2.0 * step)
-        cc = cc - _slot(cc, porosity) / slope
-    return cc
-
-
-def _slot(cc: Floats, porosity: Floats) -> Floats:
-    """Residual of the contraction law; zero at the coefficient sought."""
-    z = cc * porosity
-    return cc * (1.0 + 2.0 / np.pi * (1.0 - z * z) / z * np.arctan(z)) - 1.0
+    root = np.sqrt(np.maximum(1.0 - porosity, 0.0))
+    inner = ((0.123225479 * root - 0.419972218) * root + 0.754744239) * root - 0.902746373
+    return 1.0 + ((inner * root + 0.993451335) * root - 0.937694105) * root
 
 
 def entrance_loss(porosity: Floats, ends: Literal["sharp", "smooth", "none"]) -> Floats:

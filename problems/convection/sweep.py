@@ -62,10 +62,10 @@ class Sweep:
     """What the walk gives; shape (n,). Friction factors and Stanton numbers on nominal velocity.
 
     `friction` and `stanton` are means over the length (flux: one over the mean resistance),
-    `least_stanton` the worst spot, `outlet_stanton` the last; `wall_high` is the highest value along
-    the plate of (T_wall - T_inlet) rho cp u / q for uniform flux; `wire_friction` is the wire's drag
-    in the same terms as `friction`; `momentum_factor` is the outlet's; `turbulent_share` is of the
-    length.
+    `least_stanton` the worst spot, `outlet_stanton` the last; `wall_high` is the highest value
+    along the plate of (T_wall - T_inlet) rho cp u / q for uniform flux; `wire_friction` is the
+    wire's drag in the same terms as `friction`; `momentum_factor` is the outlet's;
+    `turbulent_share` is of the length.
     """
 
     friction: Floats

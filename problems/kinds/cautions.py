@@ -1,6 +1,6 @@
 """Where the assumptions of the model end, design by design, and the usual cautions of the trade.
 
-Masks only; the general safety words are in `GENERAL`, printed by every command that sizes something.
+Masks, and in `GENERAL` the words of safety that go with every sized surface.
 """
 
 from __future__ import annotations

@@ -40,8 +40,8 @@ def notes(case: Case) -> tuple[str, ...]:
     said = []
     if case.fluid.critical_reynolds is not None:
         said.append(
-            f"Transition is taken to begin at Re_x = {natural:.3g}, as given; that is a plate in "
-            f"a stream of about {level:.2g} % turbulence."
+            f"Transition is taken to begin at Re_x = {natural:.3g}, as given; "
+            f"that is a stream of about {level:.2g} % turbulence."
         )
     else:
         others = transition.onset_second_opinions(max(level, 0.05))
