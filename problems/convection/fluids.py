@@ -108,8 +108,9 @@ class Fluid:
 
     def _between(self, row: int, node: NDArray[np.intp], part: Floats) -> Floats:
         # mode="clip" only because it is the quick one: node is already inside
-        rise = self._rises[row].take(node, mode="clip")
-        return self.values[row].take(node, mode="clip") + rise * part
+        start: Floats = self.values[row].take(node, mode="clip")
+        rise: Floats = self._rises[row].take(node, mode="clip")
+        return start + rise * part
 
 
 def fluid(
@@ -145,6 +146,14 @@ def fluid(
         known = _build(source_of(name, pressure, reference, humidity), start, stop)
         _keep(key, known)
     return known
+
+
+def check_name(name: str) -> None:
+    """Raises FluidError, with the nearest name, where no fluid is called `name`."""
+    if name.upper().startswith("INCOMP::"):
+        _require_known_liquid("INCOMP::" + name[8:])
+    elif name.lower() != "humid air":
+        _require_known(name)
 
 
 def standard_pressure(altitude: ArrayLike) -> Floats:
