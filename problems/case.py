@@ -139,7 +139,7 @@ def _kind(raw: Mapping[str, Any]) -> str:
 
 def _faults_of_any_kind(raw: Mapping[str, Any]) -> list[str]:
     """That the kind is unknown, and the faults that the case would have as any of the kinds."""
-    found = []
+    found: list[list[str]] = []
     for kind, schema in SCHEMAS.items():
         try:
             schema.model_validate({**raw, "kind": kind})

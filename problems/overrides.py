@@ -84,11 +84,12 @@ def _number(text: str) -> str | int | float:
 
 def _put(table: dict[str, Any], parts: list[str], value: Any) -> bool:
     """Sets a value at a path, making tables on the way; false where a value stands in the way."""
+    inner: Any = table
     for part in parts[:-1]:
-        table = table.setdefault(part, {})
-        if not isinstance(table, dict):
+        inner = inner.setdefault(part, {})
+        if not isinstance(inner, dict):
             return False
-    table[parts[-1]] = value
+    inner[parts[-1]] = value
     return True
 
 

@@ -38,13 +38,17 @@ class Position(Span):
     is_share: bool = False
 
 
+# path from the key that is being read, value given, what is allowed
+Fault = tuple[tuple[str, ...], object, str]
+
+
 def fault(allowed: str) -> PydanticCustomError:
     """An error that carries the sentence for the user."""
     return PydanticCustomError("fault", "{allowed}", {"allowed": allowed})
 
 
-def faults(found: Sequence[tuple[tuple[str, ...], object, str]]) -> ValidationError:
-    """Several faults below one key: (path from that key, value, what is allowed)."""
+def faults(found: Sequence[Fault]) -> ValidationError:
+    """Several faults below one key."""
     lines = [InitErrorDetails(type=fault(says), loc=loc, input=value) for loc, value, says in found]
     return ValidationError.from_exception_data("case", lines)
 
