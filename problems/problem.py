@@ -146,7 +146,8 @@ class Shape:
 class Sketch:
     """A side view of a design to scale: outlines, the size of the view, a line of dimensions.
 
-    `repeats` tells how often the drawn passage stands in the whole (1 for a single plate).
+    `repeats` tells how often one passage stands in the whole (1 for a single plate), `pitch` how
+    far apart the repeats stand.
     """
 
     shapes: tuple[Shape, ...]
@@ -154,6 +155,7 @@ class Sketch:
     height: float
     caption: str
     repeats: float = 1.0
+    pitch: float = 0.0
 
 
 class Problem(ABC):
@@ -188,6 +190,13 @@ class Problem(ABC):
     @abstractmethod
     def remarks(self, design: Floats) -> tuple[str, ...]:
         """Plain sentences about one design of shape (number of variables,): regimes, verdicts."""
+
+    def whole(self, design: Floats) -> tuple[Problem, Floats] | None:
+        """A problem and design that can be built, with the nearest whole count of what repeats.
+
+        None where nothing repeats or the count is whole already.
+        """
+        return None
 
     def outcome(self, name: str) -> Outcome:
         """The outcome or setting called `name`.

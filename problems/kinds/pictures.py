@@ -108,7 +108,12 @@ def sketch(case: Case, batch: Batch) -> Sketch:
         shapes += [Shape("wire", _ring(place, seat + 0.5 * wire, 0.5 * wire)) for seat in seats]
     height = float(levels[-1]) + thick
     return Sketch(
-        tuple(shapes), length, max(height, thick), _caption(given), given.get("count", 1.0)
+        tuple(shapes),
+        length,
+        max(height, thick),
+        _caption(given),
+        repeats=given.get("count", 1.0),
+        pitch=gap + thick if gap else 0.0,
     )
 
 
