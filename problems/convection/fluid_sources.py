@@ -20,6 +20,7 @@ from numpy.typing import NDArray
 
 Floats = NDArray[np.float64]
 
+OWN_NAMES = ("air", "humid air", "water")
 _MARGIN = 0.05  # K that a source keeps away from boiling, condensing and freezing
 _HUMID_AIR = (130.0 + _MARGIN, 623.15 - _MARGIN)  # K, bounds of CoolProp's humid air
 _TOUCH = 1e-3  # K, where the bound itself is a state but some releases refuse it
@@ -70,9 +71,10 @@ def source_of(name: str, pressure: float, reference: float, humidity: float | No
     """The source for a fluid in the phase that it has at the `reference` temperature."""
     if humidity is not None:
         found = _humid_air(pressure, reference, humidity)
-    elif name.upper().startswith("INCOMP::"):
+    elif _is_liquid(name):
         found = _incompressible("INCOMP::" + name[8:], pressure)
     else:
+        check_name(name)
         found = _pure(name, pressure, reference)
     if not found.floor - 0.1 <= reference <= found.ceiling + 0.1:
         span = f"from {found.floor:.2f} K to {found.ceiling:.2f} K"
@@ -111,7 +113,6 @@ def _pure(name: str, pressure: float, reference: float) -> Source:
     """A pure or pseudo-pure fluid, liquid or gas, from its equation of state."""
     from CoolProp import CoolProp
 
-    _require_known(name)
     most = CoolProp.PropsSI("pmax", name)
     if pressure > most:
         raise FluidError("pressure", pressure, f"{name} is known up to {most:g} Pa")
@@ -159,7 +160,7 @@ def _incompressible(name: str, pressure: float) -> Source:
     """One of CoolProp's incompressible liquids and solutions: oils, brines, glycols."""
     from CoolProp import CoolProp
 
-    _require_known_liquid(name)
+    _check_liquid(name)
     floor, ceiling = CoolProp.PropsSI("Tmin", name), CoolProp.PropsSI("Tmax", name)
     freezing = None
     with contextlib.suppress(ValueError):
@@ -246,8 +247,15 @@ def _humid_rows(temperature: Floats, pressure: float, ratio: float) -> Floats:
 # Names
 
 
-def _require_known(name: str) -> None:
-    """Raises FluidError for a fluid that CoolProp does not know, with the nearest that it does."""
+def check_name(name: str) -> None:
+    """Raises FluidError for a fluid that CoolProp does not know, with the nearest that it does.
+
+    Whether it has properties at the case's temperatures is seen only when a table is built.
+    """
+    if name.casefold() in OWN_NAMES:
+        return
+    if _is_liquid(name):
+        return _check_liquid("INCOMP::" + name[8:])
     from CoolProp import CoolProp
 
     if not re.search("::|&", name.removeprefix("HEOS::")):
@@ -257,7 +265,11 @@ def _require_known(name: str) -> None:
     raise FluidError("name", name, _nearest(name))
 
 
-def _require_known_liquid(name: str) -> None:
+def _is_liquid(name: str) -> bool:
+    return name.casefold().startswith("incomp::")
+
+
+def _check_liquid(name: str) -> None:
     """Raises FluidError for an unknown incompressible liquid, or a fraction it does not have."""
     from CoolProp import CoolProp
 
@@ -303,8 +315,8 @@ def _nearest(name: str) -> str:
     known = {liquid.casefold(): f"INCOMP::{liquid}" for liquid in pure + solutions}
     for fluid in CoolProp.FluidsList():
         known |= {alias.casefold(): fluid for alias in (*CoolProp.get_aliases(fluid), fluid)}
-    known |= {"air": "air", "humid air": "humid air", "water": "water"}
+    known |= {own: own for own in OWN_NAMES}
     bare = _split(name.rpartition("::")[2])[0].casefold()
     near = difflib.get_close_matches(bare, list(known), n=5, cutoff=0.6)
     hint = f"; nearest: {', '.join(dict.fromkeys(known[n] for n in near))}" if near else ""
-    return f"must be air, humid air, water or a fluid that CoolProp knows{hint}"
+    return f"must be {', '.join(OWN_NAMES)} or a fluid that CoolProp knows{hint}"

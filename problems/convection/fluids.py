@@ -21,9 +21,17 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from problems.convection.fluid_sources import FluidError, Source, source_of
+from problems.convection.fluid_sources import FluidError, Source, check_name, source_of
 
-__all__ = ["CACHE_VARIABLE", "Fluid", "FluidError", "Properties", "fluid", "standard_pressure"]
+__all__ = [
+    "CACHE_VARIABLE",
+    "Fluid",
+    "FluidError",
+    "Properties",
+    "check_name",
+    "fluid",
+    "standard_pressure",
+]
 
 Floats = NDArray[np.float64]
 
@@ -60,7 +68,7 @@ class Fluid:
     """Properties of one fluid at one `pressure` [Pa] between `low` and `high` [K].
 
     Outside that span every method gives the value at the nearer end; `low` and `high` tell which
-    temperatures those are. `phase` is "gas" or "liquid". `saturation_temperature` [K] is where
+    temperatures those are (humid air: `low` is no lower than the dew point). `phase` is "gas" or "liquid". `saturation_temperature` [K] is where
     the phase ends at this pressure (boiling of a liquid, condensing of a gas), `freezing_point`
     [K] where a liquid freezes, `dew_point` [K] and `humidity_ratio` [kg/kg dry air] belong to
     humid air; each is None where it does not apply or is not known. `values` is the table, shape
@@ -146,14 +154,6 @@ def fluid(
         known = _build(source_of(name, pressure, reference, humidity), start, stop)
         _keep(key, known)
     return known
-
-
-def check_name(name: str) -> None:
-    """Raises FluidError, with the nearest name, where no fluid is called `name`."""
-    if name.upper().startswith("INCOMP::"):
-        _require_known_liquid("INCOMP::" + name[8:])
-    elif name.lower() != "humid air":
-        _require_known(name)
 
 
 def standard_pressure(altitude: ArrayLike) -> Floats:
@@ -286,12 +286,12 @@ def _load(key: str) -> Fluid | None:
     if place is None:
         return None
     try:
-        with np.load(place, allow_pickle=False) as kept:
+        with place.open("rb") as file, np.load(file, allow_pickle=False) as kept:
             texts, numbers, values = kept["texts"], kept["numbers"], kept["values"]
         stated, name, phase = (str(text) for text in texts)
         pressure, low, high, *facts = (float(number) for number in numbers)
         saturation, freezing, dew, ratio = (_optional(fact) for fact in facts)
-    except (OSError, ValueError, KeyError, EOFError, zipfile.BadZipFile, zlib.error):
+    except (OSError, ValueError, KeyError, TypeError, EOFError, zipfile.BadZipFile, zlib.error):
         return None
     sound = values.ndim == 2 and len(values) == _ROWS and values.dtype == np.float64
     if not (stated == key and sound and low < high and np.isfinite(values).all()):
