@@ -68,11 +68,11 @@ class Fluid:
     """Properties of one fluid at one `pressure` [Pa] between `low` and `high` [K].
 
     Outside that span every method gives the value at the nearer end; `low` and `high` tell which
-    temperatures those are (humid air: `low` is no lower than the dew point). `phase` is "gas" or "liquid". `saturation_temperature` [K] is where
-    the phase ends at this pressure (boiling of a liquid, condensing of a gas), `freezing_point`
-    [K] where a liquid freezes, `dew_point` [K] and `humidity_ratio` [kg/kg dry air] belong to
-    humid air; each is None where it does not apply or is not known. `values` is the table, shape
-    (6, nodes), rows as in `_ROWS`, nodes evenly spaced.
+    temperatures those are (for humid air `low` is no lower than the dew point). `phase` is "gas"
+    or "liquid". `saturation_temperature` [K] is where the phase ends at this pressure (boiling of
+    a liquid, condensing of a gas), `freezing_point` [K] where a liquid freezes; `dew_point` [K]
+    and `humidity_ratio` [kg/kg dry air] belong to humid air. Each is None where it does not apply
+    or is not known. `values` is the table, shape (6, nodes), rows as in `_ROWS`, even spacing.
     """
 
     name: str
