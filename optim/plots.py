@@ -1,0 +1,307 @@
+"""The pictures of a run: the front, and how the design variables run along it.
+
+The side views are drawn in `sketches`, one design along its plate in `profiles`; sizes, palette
+and axes are in `ink`.
+"""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Sequence
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from optim import ink
+from optim.front import Front
+from optim.picks import column, designs, leading, picked
+from optim.profiles import profile_picture
+from optim.sketches import sketch_picture
+from problems.problem import Aim, Floats, Outcome, Problem, Variable
+from problems.units import format_value
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+    from matplotlib.figure import Figure
+
+__all__ = [
+    "FRONT",
+    "SKETCH",
+    "VARIABLES",
+    "front_picture",
+    "profile_picture",
+    "save_pictures",
+    "sketch_picture",
+    "variables_picture",
+]
+
+FRONT, VARIABLES, SKETCH = "front.png", "variables.png", "sketch.png"
+_SIZES = (14.0, 110.0)  # of markers, pt^2, from least to most of the third aim
+_SIZE = 30.0  # without a third aim
+_LEGEND_MM = 46.0
+
+
+def save_pictures(front: Front, problem: Problem, folder: str | os.PathLike[str]) -> list[Path]:
+    """Draw front.png, variables.png and sketch.png into `folder`; nothing for an empty front.
+
+    Returns the files written. A picture that would show nothing (no free variable) is left out.
+    """
+    if not len(front):
+        return []
+    place = Path(folder)
+    drawn = [ink.save(front_picture(front, problem), place / FRONT, problem.title)]
+    if problem.variables:
+        drawn.append(ink.save(variables_picture(front, problem), place / VARIABLES, problem.title))
+    drawn.append(ink.save(sketch_picture(front, problem), place / SKETCH, problem.title))
+    return drawn
+
+
+def front_picture(front: Front, problem: Problem, figure: Figure | None = None) -> Figure:
+    """The front over its two leading aims, the third as size and colour of the markers.
+
+    With a single aim it is drawn over the first variable. The sort of design is told by the
+    marker's shape; the designs of the sketch carry their letters.
+    """
+    with ink.style():
+        below = _below(front, problem)
+        top = ink.head_mm(problem.title, below)
+        figure = figure or ink.sheet(96.0 + top)
+        ink.head(figure, problem.title, below)
+        width = ink.WIDTH_MM - 20.0 - _LEGEND_MM
+        ax = ink.panel(figure, 18.0, 13.0, width, ink.height_mm(figure) - 16.0 - top)
+        x_name, y_name = _axes(problem)
+        x = _scaled(ax, "x", front, problem, x_name)
+        y = _scaled(ax, "y", front, problem, y_name)
+        third = leading(problem)[2] if len(problem.aims) > 2 else None
+        if third is None:
+            _scatter(ax, front, x, y, None, None)
+        else:
+            _third_aim(ax, front, problem, third, x, y)
+        for pick in picked(front, problem):
+            _letter(ax, pick.letter, x[pick.row], y[pick.row])
+        return figure
+
+
+def variables_picture(front: Front, problem: Problem, figure: Figure | None = None) -> Figure:
+    """How each free variable runs along the front, over the first aim, within its range.
+
+    Aims beyond the third, which the picture of the front cannot show, have a panel each too.
+    """
+    with ink.style():
+        rows: list[Variable | Outcome] = list(problem.variables)
+        rows += [problem.outcome(aim.outcome) for aim in leading(problem)[3:]]
+        tall, title = -(-len(rows) // 2), f"{problem.title}: the designs along the front"
+        top = ink.head_mm(title) + 6.0
+        figure = figure or ink.sheet(top + 40.0 * tall + 11.0)
+        ink.head(figure, title)
+        name = leading(problem)[0].outcome
+        for place, quantity in enumerate(rows):
+            lowest = place + 2 >= len(rows)
+            left = 18.0 + 84.0 * (place % 2)
+            bottom = 11.0 + 40.0 * (tall - 1 - place // 2)
+            ax = ink.panel(figure, left, bottom, 64.0, 34.0)
+            x = _scaled(ax, "x", front, problem, name)
+            _along(ax, front, problem, quantity, x)
+            if not lowest:
+                ax.set_xlabel("")
+                ax.tick_params(labelbottom=False)
+        _strip_legend(figure, figure.axes[0], top - 6.0)
+        return figure
+
+
+def _below(front: Front, problem: Problem) -> str:
+    count = f"{len(front)} designs that nothing beats" if len(front) > 1 else "one design"
+    if len(problem.aims) == 1:
+        count = f"the best design and {len(front) - 1} near it" if len(front) > 1 else count
+    letters = "; ".join(f"{pick.letter} {pick.label}" for pick in picked(front, problem))
+    more = [ink.words(aim.outcome) for aim in leading(problem)[3:]]
+    also = f"; {' and '.join(more)}: see {VARIABLES}" if more else ""
+    return f"{count[0].upper()}{count[1:]}. {letters}{also}"
+
+
+def _axes(problem: Problem) -> tuple[str, str]:
+    """Names of the quantities along and up the picture of the front."""
+    aims = leading(problem)
+    if len(aims) > 1:
+        return aims[0].outcome, aims[1].outcome
+    free = [item.name for item in problem.variables] or [item.name for item in problem.settings]
+    return free[0], aims[0].outcome
+
+
+def _quantity(problem: Problem, name: str) -> Variable | Outcome:
+    named = {item.name: item for item in problem.variables}
+    return named[name] if name in named else problem.outcome(name)
+
+
+def _values(front: Front, problem: Problem, quantity: Variable | Outcome) -> Floats:
+    if isinstance(quantity, Variable):
+        return designs(front, problem)[:, problem.variables.index(quantity)]
+    return column(front, problem, quantity.name)
+
+
+def _scaled(ax: Axes, side: Any, front: Front, problem: Problem, name: str) -> Floats:
+    """Dress one side of `ax` for a quantity and return its values as they stand there."""
+    quantity = _quantity(problem, name)
+    values = _values(front, problem, quantity)
+    senses = {aim.outcome: aim.sense for aim in problem.aims}
+    note = {"most": "more is better", "least": "less is better"}.get(senses.get(name, ""), "")
+    shown = ink.measure(ax, side, ink.words(name), quantity.unit, values, note)(values)
+    ink.margins(ax, side, shown)
+    return shown
+
+
+def _scatter(
+    ax: Axes, front: Front, x: Floats, y: Floats, size: Floats | None, tint: Any | None
+) -> None:
+    """One marker per design, shaped by its sort; coloured by sort where no `tint` is given."""
+    groups = front.table["group"].to_numpy(dtype=str)
+    order = np.arange(len(x)) if size is None else np.argsort(-size, kind="stable")
+    for place, (group, marker) in enumerate(ink.markers(groups).items()):
+        rows = order[groups[order] == group]
+        colour: Any = ink.PALETTE[place % len(ink.PALETTE)] if tint is None else tint[rows]
+        ax.scatter(
+            x[rows],
+            y[rows],
+            s=_SIZE if size is None else size[rows],
+            c=[colour] if tint is None else colour,
+            marker=marker,
+            edgecolors=ink.INK,
+            linewidths=0.5,
+            label=f"{group} ({len(rows)})",
+            zorder=3,
+        )
+    if tint is None:
+        _legend(ax, *ax.get_legend_handles_labels(), "Sort of design", 1.0)
+
+
+def _third_aim(
+    ax: Axes, front: Front, problem: Problem, aim: Aim, x: Floats, y: Floats
+) -> None:
+    import matplotlib as mpl
+    from matplotlib.lines import Line2D
+
+    quantity = problem.outcome(aim.outcome)
+    values = column(front, problem, aim.outcome)
+    share = _share(values, values)
+    ramp = mpl.colormaps[ink.RAMP]
+    _scatter(ax, front, x, y, _size(share), ramp(share))
+    groups = front.table["group"].to_numpy(dtype=str)
+    shapes = [
+        Line2D([], [], ls="", marker=marker, ms=5.5, mfc="white", mec=ink.INK, mew=0.8)
+        for marker in ink.markers(groups).values()
+    ]
+    counts = [f"{group} ({int((groups == group).sum())})" for group in ink.markers(groups)]
+    _legend(ax, shapes, counts, "Sort of design", 1.0)
+    steps = _steps(values)
+    sized = zip(_share(steps, values), steps, strict=True)
+    handles, labels = [], []
+    for part, step in sized:
+        area = float(_size(np.array(part)))
+        handles.append(
+            Line2D([], [], ls="", marker="o", ms=area**0.5, mfc=ramp(part), mec=ink.INK, mew=0.5)
+        )
+        labels.append(format_value(float(f"{step:.2g}"), quantity.unit))
+    better = "more" if aim.sense == "most" else "less"
+    title = f"{ink.words(aim.outcome)}\n({better} is better)"
+    _legend(ax, handles, labels, title, 0.94 - 0.075 * len(shapes) - 0.06)
+
+
+def _share(values: Floats, among: Floats) -> Floats:
+    """Where values stand between least and most of `among`, 0 to 1, by ratio over decades."""
+    bend = np.log if ink.runs_over_decades(among) else np.asarray
+    low, high = bend(among.min()), bend(among.max())
+    return np.asarray((bend(values) - low) / (high - low if high > low else 1.0), dtype=float)
+
+
+def _size(share: Floats) -> Floats:
+    return np.asarray(_SIZES[0] + share * (_SIZES[1] - _SIZES[0]))
+
+
+def _steps(values: Floats) -> Floats:
+    """Four values from least to most, for a legend."""
+    low, high = float(values.min()), float(values.max())
+    if high <= low:
+        return np.array([low])
+    if ink.runs_over_decades(values):
+        return np.geomspace(low, high, 4)
+    return np.linspace(low, high, 4)
+
+
+def _legend(
+    ax: Axes, handles: Sequence[Any], labels: Sequence[str], title: str, top: float
+) -> None:
+    from matplotlib.legend import Legend
+
+    legend = Legend(
+        ax,
+        list(handles),
+        list(labels),
+        loc="upper left",
+        bbox_to_anchor=(1.03, top),
+        title=title,
+        alignment="left",
+        borderaxespad=0.0,
+        handletextpad=0.5,
+        labelspacing=0.55,
+    )
+    ax.add_artist(legend)
+
+
+def _letter(ax: Axes, letter: str, x: float, y: float) -> None:
+    from matplotlib.patheffects import withStroke
+
+    ax.annotate(
+        letter,
+        (x, y),
+        xytext=(-11.0, 8.0),
+        textcoords="offset points",
+        ha="center",
+        va="center",
+        fontweight="bold",
+        path_effects=[withStroke(linewidth=2.5, foreground="white")],
+        zorder=5,
+    )
+    ax.plot([x], [y], ls="", marker="o", ms=14.0, mfc="none", mec=ink.INK, mew=1.1, zorder=4)
+
+
+def _along(
+    ax: Axes, front: Front, problem: Problem, quantity: Variable | Outcome, x: Floats
+) -> None:
+    """One panel: a quantity over the first aim, with the ends of its range if it was searched."""
+    values = _values(front, problem, quantity)
+    ends = np.array([quantity.low, quantity.high]) if isinstance(quantity, Variable) else values
+    convert = ink.measure(ax, "y", ink.words(quantity.name), quantity.unit, ends)
+    if isinstance(quantity, Variable):
+        for end in convert(ends):
+            ax.axhline(end, color=ink.GREY, lw=0.9, ls=(0, (5, 3)), label="searched range")
+    ink.margins(ax, "y", convert(ends), 0.08)
+    groups = front.table["group"].to_numpy(dtype=str)
+    for place, (group, marker) in enumerate(ink.markers(groups).items()):
+        rows = groups == group
+        ax.scatter(
+            x[rows],
+            convert(values)[rows],
+            s=15.0,
+            c=[ink.PALETTE[place % len(ink.PALETTE)]],
+            marker=marker,
+            edgecolors=ink.INK,
+            linewidths=0.35,
+            label=group,
+            zorder=3,
+        )
+
+
+def _strip_legend(figure: Figure, ax: Axes, top: float) -> None:
+    """One line of legend across the sheet, `top` mm below its upper edge."""
+    unique = dict(zip(*reversed(ax.get_legend_handles_labels()), strict=True))
+    figure.legend(
+        list(unique.values()),
+        list(unique),
+        loc="upper left",
+        bbox_to_anchor=(3.0 / ink.WIDTH_MM, 1.0 - top / ink.height_mm(figure)),
+        ncols=len(unique),
+        borderaxespad=0.0,
+        columnspacing=1.6,
+        handletextpad=0.4,
+    )
