@@ -16,6 +16,10 @@ if TYPE_CHECKING:
 __all__ = ["CaseError", "build", "load_case", "ready_made"]
 
 
+# kind of case -> module whose `build` states it as a Problem
+_BUILDERS = {"plate": "problems.kinds.statement", "stack": "problems.kinds.statement"}
+
+
 class CaseError(Exception):
     """A case that cannot be used; the message names key, value and what is allowed."""
 
@@ -25,7 +29,7 @@ def build(case: Case) -> Problem:
 
     Raises CaseError where the fluid has no properties at the case's temperatures.
     """
-    problem: Problem = import_module(f"problems.kinds.{case.kind}").build(case)
+    problem: Problem = import_module(_BUILDERS[case.kind]).build(case)
     return problem
 
 

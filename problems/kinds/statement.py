@@ -11,16 +11,17 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
+from problems import CaseError
 from problems.case import Case
 from problems.convection import fluids
-from problems.convection.fluids import Fluid
+from problems.convection.fluids import Fluid, FluidError
 from problems.kinds import cautions, laws, pictures, plate, stack, words
 from problems.kinds.outcomes import OUTCOMES, SETTINGS
 from problems.kinds.swept import CHUNK, Walked, settings, variables
-from problems.problem import Aim, Evaluation, Floats, Limit, Problem, Profile, Sketch
+from problems.problem import Evaluation, Floats, Problem, Profile, Sketch
 
 _TOUCHING = 0.8  # share of the gap that wires on both walls may take
-_MARGIN = 25.0  # K of property table beyond inlet and wall
+_REACH = 300.0  # K from the inlet that a wall under a flux may reach
 
 
 @dataclass(frozen=True)
@@ -32,6 +33,17 @@ class Batch:
     outcomes: dict[str, Floats]
 
 
+def build(case: Case) -> SweptPlates:
+    """The Problem of a case of kind `plate` or `stack`.
+
+    Raises CaseError where the fluid has no properties at the case's temperatures.
+    """
+    try:
+        return SweptPlates(case)
+    except FluidError as error:
+        raise CaseError(f"fluid.{error.key} = {error.value!r}: {error.allowed}") from error
+
+
 class SweptPlates(Problem):
     """A plate in a free stream or a stack of plates; see `Problem`."""
 
@@ -41,8 +53,7 @@ class SweptPlates(Problem):
         self.variables = variables(case)
         self.settings = SETTINGS[case.kind]
         self.outcomes = OUTCOMES[case.kind]
-        self.aims = tuple(Aim(aim.outcome, aim.sense) for aim in case.aims)
-        self.limits = tuple(Limit(lim.outcome, lim.at_least, lim.at_most) for lim in case.limits)
+        self.aims, self.limits = case.aims, case.limits
         self._ranges = laws.in_use(
             passage=case.kind == "stack",
             wire=case.trip is not None,
@@ -158,14 +169,12 @@ def _impossible(fluid: Fluid, batch: Batch) -> tuple[Floats, NDArray[np.str_]]:
 def _fluid(case: Case) -> Fluid:
     """Property table over all temperatures that the case can meet."""
     inlet, wall = case.fluid.temperature, case.plates.surface.temperature
-    if wall is None:
-        low, high = (
-            (inlet, inlet + 300.0)
-            if (case.plates.surface.flux or 0.0) > 0
-            else (inlet - 100.0, inlet)
-        )
-    else:
+    if wall is not None:
         low, high = min(inlet, wall), max(inlet, wall)
+    elif (case.plates.surface.flux or 0.0) > 0.0:
+        low, high = inlet, inlet + _REACH
+    else:
+        low, high = max(inlet - _REACH, 0.5 * inlet), inlet
     return fluids.fluid(
         case.fluid.name,
         case.fluid.pressure,
