@@ -31,7 +31,7 @@ RAMP = "cividis"
 _MARKERS = {"plain": "o", "tripped": "^", "idle wire": "D"}
 _SPARE_MARKERS = ("s", "v", "P", "X", "<", ">")
 
-_STYLE: dict[str, Any] = {
+_STYLE: dict[Any, Any] = {
     "font.family": "sans-serif",
     "font.size": 9.0,
     "axes.titlesize": 9.0,

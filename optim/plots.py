@@ -17,6 +17,7 @@ from optim import ink
 from optim.front import Front
 from optim.picks import column, designs, leading, picked
 from optim.profiles import profile_picture
+from optim.runs import PICTURES, free_name, writable
 from optim.sketches import sketch_picture
 from problems.problem import Aim, Floats, Outcome, Problem, Variable
 from problems.units import format_value
@@ -27,16 +28,19 @@ if TYPE_CHECKING:
 
 __all__ = [
     "FRONT",
+    "PROFILE",
     "SKETCH",
     "VARIABLES",
     "front_picture",
     "profile_picture",
     "save_pictures",
+    "save_profile",
     "sketch_picture",
     "variables_picture",
 ]
 
-FRONT, VARIABLES, SKETCH = "front.png", "variables.png", "sketch.png"
+FRONT, VARIABLES, SKETCH = PICTURES
+PROFILE = "profile.png"
 _SIZES = (14.0, 110.0)  # of markers, pt^2, from least to most of the third aim
 _SIZE = 30.0  # without a third aim
 _LEGEND_MM = 46.0
@@ -55,6 +59,20 @@ def save_pictures(front: Front, problem: Problem, folder: str | os.PathLike[str]
         drawn.append(ink.save(variables_picture(front, problem), place / VARIABLES, problem.title))
     drawn.append(ink.save(sketch_picture(front, problem), place / SKETCH, problem.title))
     return drawn
+
+
+def save_profile(
+    problem: Problem, design: Floats, folder: str | os.PathLike[str], force: bool = False
+) -> Path:
+    """Draw one design of shape (number of variables,) along its plate into `folder`.
+
+    Without `force` a picture that is there stays and the new one takes the next free name.
+    """
+    writable(Path(folder))
+    path = Path(folder) / PROFILE
+    if not force:
+        path = free_name(path.parent, path.stem, path.suffix)
+    return ink.save(profile_picture(problem, design), path, problem.title)
 
 
 def front_picture(front: Front, problem: Problem, figure: Figure | None = None) -> Figure:
@@ -175,9 +193,7 @@ def _scatter(
         _legend(ax, *ax.get_legend_handles_labels(), "Sort of design", 1.0)
 
 
-def _third_aim(
-    ax: Axes, front: Front, problem: Problem, aim: Aim, x: Floats, y: Floats
-) -> None:
+def _third_aim(ax: Axes, front: Front, problem: Problem, aim: Aim, x: Floats, y: Floats) -> None:
     import matplotlib as mpl
     from matplotlib.lines import Line2D
 

@@ -103,8 +103,8 @@ def _panel(
     for region in profile.regions:
         start, end = convert(region.start), convert(region.end)
         ax.axvspan(start, end, facecolor="none", hatch=hatches[region.name], lw=0, zorder=0)
-    for place in profile.marks.values():
-        ax.axvline(convert(place), color=ink.INK, lw=0.9, ls=(0, (6, 3)), zorder=2)
+    for mark in profile.marks.values():
+        ax.axvline(convert(mark), color=ink.INK, lw=0.9, ls=(0, (6, 3)), zorder=2)
     if len(curves) > 1:
         ax.legend(loc="upper left", bbox_to_anchor=(1.02, 1.0), borderaxespad=0.0)
 

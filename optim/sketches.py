@@ -22,7 +22,7 @@ if TYPE_CHECKING:
 
 _VIEW_MM, _VIEW_HIGH_MM = 104.0, 40.0  # room for the largest design
 _DETAIL_MM, _DETAIL_HIGH_MM = 42.0, 27.0
-_LEFT_MM, _CAPTION_MM, _FOOT_MM = 14.0, 11.0, 12.0
+_LEFT_MM, _CAPTION_MM, _FOOT_MM = 14.0, 15.0, 12.0
 _WIRE_MM = 2.5  # least diameter of a wire on paper, in the detail
 _FILL = {"plate": "#4D4D4D", "wire": "#D55E00", "layer": "#CDE3F2"}
 _ROUND = np.array([1.0, 2.0, 5.0])
@@ -117,7 +117,12 @@ def _fill(ax: Axes, outlines: Floats | list[Floats], part: str, edge: float) -> 
 
     ax.add_collection(
         PolyCollection(
-            list(outlines), facecolors=_FILL[part], edgecolors=ink.INK, linewidths=edge, zorder=2
+            list(outlines),
+            facecolors=_FILL[part],
+            edgecolors=ink.INK,
+            linewidths=edge,
+            zorder=2,
+            snap=False,
         ),
         autolim=False,
     )
@@ -215,4 +220,4 @@ def _foot(figure: Figure, widest: float, scale: float) -> None:
     ax.text(size * scale + 2.0, 4.0, f"{format_value(size, 'm')}, all alike", va="center")
     ax.plot([74.0], [4.0], marker="v", ms=5.0, color=_FILL["wire"], mec=ink.INK, mew=0.5)
     ax.text(76.5, 4.0, "place of the wire", va="center")
-    ax.text(110.0, 4.0, "enlarged, not alike", va="center")
+    ax.text(110.0, 4.0, "enlarged, own bar each", va="center")
