@@ -79,8 +79,7 @@ def spread(front: Front, problem: Problem, count: int = 7) -> Indices:
 def _to_be_least(front: Front, problem: Problem) -> Floats:
     signs = [1.0 if aim.sense == "least" else -1.0 for aim in leading(problem)]
     columns = [column(front, problem, aim.outcome) for aim in leading(problem)]
-    spaced = ranks / max(len(aims) - 1, 1)
-    return np.asarray(spaced, dtype=np.float64)
+    return np.asarray(np.column_stack(columns) * np.array(signs), dtype=np.float64)
 
 
 def _best(aims: Floats, place: int) -> int:
@@ -92,7 +91,7 @@ def _ranks(aims: Floats) -> Floats:
     order = np.argsort(aims, axis=0, kind="stable")
     ranks = np.empty_like(aims)
     np.put_along_axis(ranks, order, np.arange(len(aims), dtype=float)[:, None], axis=0)
-    return np.asarray(ranks / max(len(aims) - 1, 1), dtype=float)
+    return np.asarray(ranks / max(len(aims) - 1, 1), dtype=np.float64)
 
 
 def _middle(aims: Floats, ends: set[int]) -> int | None:
