@@ -130,7 +130,7 @@ def parse_case(
     try:
         return schema.read(raw, name, text)
     except ValidationError as error:
-        raise _error(where, lines(error, schema)) from None
+        raise _error(where, lines(error, schema, raw)) from None
 
 
 def _kind(raw: Mapping[str, Any]) -> str:
@@ -145,7 +145,7 @@ def _faults_of_any_kind(raw: Mapping[str, Any]) -> list[str]:
             schema.model_validate({**raw, "kind": kind})
             found.append([])
         except ValidationError as error:
-            found.append(lines(error, schema))
+            found.append(lines(error, schema, raw))
     allowed = f"one of the kinds {toml(list(SCHEMAS))[1:-1]}"
     return [line("kind", raw.get("kind"), allowed)] + [
         fault for fault in found[0] if all(fault in others for others in found[1:])

@@ -69,9 +69,9 @@ def paths_of(table: type[Table], path: str = "") -> Iterator[str]:
             yield from paths_of(inner, f"{path}{key}.")
 
 
-def lines(error: ValidationError, schema: type[Case]) -> list[str]:
-    """One line for each fault, in the order of the schema."""
-    return [_line(entry, schema) for entry in error.errors(include_url=False)]
+def lines(error: ValidationError, schema: type[Case], raw: Mapping[str, Any]) -> list[str]:
+    """One line for each fault of the tables `raw`, in the order of the schema."""
+    return [_line(entry, schema, raw) for entry in error.errors(include_url=False)]
 
 
 def line(path: str, value: object, allowed: str) -> str:
@@ -82,8 +82,12 @@ def line(path: str, value: object, allowed: str) -> str:
     return f"{path}: {shown} -- {allowed}"
 
 
-def _line(entry: Any, schema: type[Case]) -> str:
+def _line(entry: Any, schema: type[Case], raw: Any) -> str:
     loc, value, sort = entry["loc"], entry["input"], entry["type"]
+    if value is None:  # lacking, or refused for what stands elsewhere
+        for key in loc:
+            raw = raw.get(key) if isinstance(raw, Mapping) else None
+        value = raw
     path = ".".join(key_text(str(key)) for key in loc)
     if sort == "fault":
         return line(path, value, entry["ctx"]["allowed"])

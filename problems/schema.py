@@ -386,8 +386,7 @@ class Case(Table):
         fluid = info.data.get("fluid")
         if fluid is not None and plates.surface.temperature == fluid.temperature:
             says = "another temperature than the fluid's, or no heat passes"
-            shown = format_value(fluid.temperature, "K")
-            raise faults([(("surface", "temperature"), shown, says)])
+            raise faults([(("surface", "temperature"), None, says)])
         return plates
 
     @field_validator("trip")
@@ -397,10 +396,9 @@ class Case(Table):
         if trip is None or plates is None or plates.gap is None:
             return trip
         if trip.height.low >= 0.5 * plates.gap.high:
-            shown = format_value(trip.height.low, "m")
             widest = format_value(plates.gap.high, "m")
             says = f"below half of the widest gap, {widest}: each gap carries a wire on both faces"
-            raise faults([(("height",), shown, says)])
+            raise faults([(("height",), None, says)])
         return trip
 
 

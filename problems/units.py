@@ -61,7 +61,9 @@ _SHOWN: dict[str, tuple[tuple[float, str, float, float], ...]] = {
 
 _QUANTITY = re.compile(r"([+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d{1,3})?)\s*(.*)", re.DOTALL)
 # only products and quotients of named units with one-digit powers, never an expression to work out
-_UNIT = re.compile(r"(?:[A-Za-z]+(?:\^?-?\d)?|[*/() ]){1,40}")
+_FACTOR = r"[A-Za-z]{1,30}(?:\^?-?\d)?"
+_PRODUCT = rf"{_FACTOR}(?:[*/ ]{_FACTOR}){{0,4}}"
+_UNIT = re.compile(rf"{_PRODUCT}(?:/\({_PRODUCT}\))?(?:/{_FACTOR})?")
 _MICRO = ("\u00b5", "\u03bc")  # the sign for micro and the Greek letter look alike
 _SPELLING = {"²": "2", "³": "3", "°": "deg", "%": "percent", "·": "*", "**": "^"}
 _SPELLING |= dict.fromkeys(_MICRO, "u")
@@ -86,11 +88,11 @@ def _registry() -> Any:
 def _pint_unit(text: str) -> Any:
     for written, meant in _SPELLING.items():
         text = text.replace(written, meant)
+    text = re.sub(r"\s*([*/()])\s*", r"\1", text)
     if not _UNIT.fullmatch(text):
         raise QuantityError(text)
-    text = re.sub(r"([A-Za-z])\^?(-?\d)", r"\1**\2", text.strip())
-    text = re.sub(r"\s*([*/()])\s*", r"\1", text)
-    return _registry().parse_units(text.replace(" ", "*"))
+    powers = re.sub(r"([A-Za-z])\^?(-?\d)", r"\1**\2", text)
+    return _registry().parse_units(powers.replace(" ", "*"))
 
 
 @cache
@@ -102,7 +104,7 @@ def _line(written: str, unit: str) -> tuple[float, float]:
     try:
         given = _pint_unit(written)
         offset, one = (_registry().Quantity(x, given).to(base).magnitude for x in (0.0, 1.0))
-    except (pint.errors.PintError, QuantityError, ValueError, TypeError, AttributeError) as error:
+    except (pint.errors.PintError, ArithmeticError) as error:
         raise QuantityError(written) from error
     return float(one - offset), float(offset)
 

@@ -41,7 +41,9 @@ def build(case: Case) -> SweptPlates:
     try:
         return SweptPlates(case)
     except FluidError as error:
-        raise CaseError(f"fluid.{error.key} = {error.value!r}: {error.allowed}") from error
+        value = f"{error.value:g}" if isinstance(error.value, float) else error.value
+        fault = f"fluid.{error.key}: {value} -- {error.allowed}"
+        raise CaseError(f"{case.name}: 1 fault\n  {fault}") from error
 
 
 class SweptPlates(Problem):
