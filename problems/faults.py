@@ -14,7 +14,8 @@ from pydantic import ValidationError
 from pydantic.fields import FieldInfo
 
 from problems.rules import Foreign, Rule, nearest
-from problems.schema import SCHEMAS, Case, Table
+from problems.schema import SCHEMAS, Case
+from problems.tables import Table
 
 _BARE = re.compile(r"[A-Za-z0-9_-]+")
 _LONGEST = 100

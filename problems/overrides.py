@@ -11,7 +11,7 @@ from collections.abc import Iterable, Mapping
 from typing import Any
 
 from problems.faults import key_text, line, toml
-from problems.schema import EITHER
+from problems.tables import EITHER
 
 _OTHERS = {one: other for pair in EITHER.items() for one, other in (pair, pair[::-1])}
 _LISTS = ("aims.most", "aims.least")

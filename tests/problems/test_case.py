@@ -363,3 +363,13 @@ def test_reading_a_case_in_air_needs_no_property_library():
     )
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
     assert done.stdout.strip() == "[]"
+
+
+def test_ranges_that_no_design_will_want_are_cautioned():
+    assert [text[:24] for text in parse_case(good("stack"), "stack").cautions] == [
+        "Wires of up to 4 mm on b"
+    ]
+    fixed = {"length": "0.1 m", "velocity": 3, "trip_position": "0.2 m", "trip_height": "1 mm"}
+    texts = parse_case(good("plate"), "plate", fixed).cautions
+    assert [text[:23] for text in texts] == ["Nothing is left to sear", "A wire at up to 200 mm "]
+    assert parse_case(good("plate"), "plate").cautions == ()
