@@ -6,7 +6,7 @@ What is drawn is decided in `plots`, `profiles` and `sketches`; matplotlib is im
 from __future__ import annotations
 
 import textwrap
-from collections.abc import Callable, Iterable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from contextlib import contextmanager
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, Literal
@@ -104,10 +104,44 @@ def words(name: str) -> str:
     return name.replace("_", " ")
 
 
-def markers(groups: Iterable[str]) -> dict[str, str]:
-    """A marker shape for each sort of design, the same in every picture of a run."""
-    spare = iter(_SPARE_MARKERS * 5)
-    return {name: _MARKERS.get(name) or next(spare) for name in sorted(set(groups))}
+def markers(groups: NDArray[np.str_]) -> dict[str, tuple[str, str]]:
+    """Marker shape and colour of each sort of design, the commonest first.
+
+    The same in every picture of a run; drawn in this order, the rare ones are not hidden.
+    """
+    names, counts = np.unique(groups, return_counts=True)
+    spare, colours = iter(_SPARE_MARKERS * 5), iter(PALETTE * 5)
+    found = {str(name): (_MARKERS.get(name) or next(spare), next(colours)) for name in names}
+    order = np.argsort(-counts, kind="stable")
+    return {str(name): found[str(name)] for name in names[order]}
+
+
+def legend(
+    ax: Axes, handles: Sequence[Any], labels: Sequence[str], top: float, title: str = ""
+) -> float:
+    """A legend beside `ax`, its upper edge at `top` (share of the height of `ax`).
+
+    Returns where the next one may begin.
+    """
+    from matplotlib.legend import Legend
+
+    ax.add_artist(
+        Legend(
+            ax,
+            list(handles),
+            list(labels),
+            loc="upper left",
+            bbox_to_anchor=(1.03, top),
+            title=title or None,
+            alignment="left",
+            borderaxespad=0.0,
+            handletextpad=0.6,
+            labelspacing=0.5,
+        )
+    )
+    tall = height_mm(ax.figure) * ax.get_position(original=True).height  # type: ignore[arg-type]
+    lines = len(handles) + (1 + title.count("\n") if title else 0)
+    return top - (4.9 * lines + 4.0) / tall
 
 
 def runs_over_decades(values: Floats) -> bool:
@@ -117,17 +151,26 @@ def runs_over_decades(values: Floats) -> bool:
 
 
 def measure(
-    ax: Axes, side: Literal["x", "y"], name: str, unit: str, values: Floats, note: str = ""
+    ax: Axes,
+    side: Literal["x", "y"],
+    name: str,
+    unit: str,
+    values: Floats,
+    note: str = "",
+    wrap: int = 0,
 ) -> Callable[[Any], NDArray[np.float64]]:
     """Label and scale one side of `ax` for `values` (any shape, SI).
 
+    `note` stands behind the unit in brackets; `wrap` is the length of a line of the label.
     Returns what takes SI values to the numbers on the axis.
     """
-    label, convert = axis_unit("" if unit == "1" else unit, values)
+    label, convert = axis_unit(unit, values)
     shown = convert(values)
     axis = ax.xaxis if side == "x" else ax.yaxis
-    text = f"{name}, {label}" if label else name
-    axis.set_label_text(f"{text} ({note})" if note else text)
+    unbroken = label.replace(" ", "\N{NO-BREAK SPACE}")
+    text = f"{name}, {unbroken}" if label else name
+    text = f"{text} ({note})" if note else text
+    axis.set_label_text("\n".join(textwrap.wrap(text, wrap)) if wrap else text)
     if runs_over_decades(shown):
         (ax.set_xscale if side == "x" else ax.set_yscale)("log")
         _ticks_by_ratio(axis, shown)

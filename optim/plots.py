@@ -7,11 +7,11 @@ and axes are in `ink`.
 from __future__ import annotations
 
 import os
-from collections.abc import Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from optim import ink
 from optim.front import Front
@@ -41,8 +41,9 @@ __all__ = [
 
 FRONT, VARIABLES, SKETCH = PICTURES
 PROFILE = "profile.png"
-_SIZES = (14.0, 110.0)  # of markers, pt^2, from least to most of the third aim
-_SIZE = 30.0  # without a third aim
+_SIZES = (0.13, 1.0)  # of markers, from least to most of the third aim
+_LARGEST = 110.0  # pt^2, for up to _MANY designs; smaller beyond
+_MANY = 60
 _LEGEND_MM = 46.0
 
 
@@ -93,7 +94,8 @@ def front_picture(front: Front, problem: Problem, figure: Figure | None = None) 
         y = _scaled(ax, "y", front, problem, y_name)
         third = leading(problem)[2] if len(problem.aims) > 2 else None
         if third is None:
-            _scatter(ax, front, x, y, None, None)
+            _scatter(ax, front, x, y, np.array(0.35 * _largest(front)))
+            _sorts(ax, front, True)
         else:
             _third_aim(ax, front, problem, third, x, y)
         for pick in picked(front, problem):
@@ -109,10 +111,10 @@ def variables_picture(front: Front, problem: Problem, figure: Figure | None = No
     with ink.style():
         rows: list[Variable | Outcome] = list(problem.variables)
         rows += [problem.outcome(aim.outcome) for aim in leading(problem)[3:]]
-        tall, title = -(-len(rows) // 2), f"{problem.title}: the designs along the front"
-        top = ink.head_mm(title) + 6.0
+        tall, below = -(-len(rows) // 2), "How the designs change along the front"
+        top = ink.head_mm(problem.title, below) + 6.0
         figure = figure or ink.sheet(top + 40.0 * tall + 11.0)
-        ink.head(figure, title)
+        ink.head(figure, problem.title, below)
         name = leading(problem)[0].outcome
         for place, quantity in enumerate(rows):
             lowest = place + 2 >= len(rows)
@@ -165,62 +167,78 @@ def _scaled(ax: Axes, side: Any, front: Front, problem: Problem, name: str) -> F
     senses = {aim.outcome: aim.sense for aim in problem.aims}
     note = {"most": "more is better", "least": "less is better"}.get(senses.get(name, ""), "")
     shown = ink.measure(ax, side, ink.words(name), quantity.unit, values, note)(values)
-    ink.margins(ax, side, shown)
+    ink.margins(ax, side, shown, 0.08)
     return shown
 
 
 def _scatter(
-    ax: Axes, front: Front, x: Floats, y: Floats, size: Floats | None, tint: Any | None
+    ax: Axes,
+    front: Front,
+    x: Floats,
+    y: Floats,
+    size: Floats,
+    tint: NDArray[np.float64] | None = None,
 ) -> None:
-    """One marker per design, shaped by its sort; coloured by sort where no `tint` is given."""
+    """One marker per design, shaped by its sort, large ones below small ones.
+
+    `size` (pt^2) is one for all or one for each; colours tell the sort where no `tint` is given.
+    """
     groups = front.table["group"].to_numpy(dtype=str)
-    order = np.arange(len(x)) if size is None else np.argsort(-size, kind="stable")
-    for place, (group, marker) in enumerate(ink.markers(groups).items()):
+    sizes = np.broadcast_to(size, x.shape)
+    order = np.argsort(-sizes, kind="stable")
+    for group, (marker, colour) in ink.markers(groups).items():
         rows = order[groups[order] == group]
-        colour: Any = ink.PALETTE[place % len(ink.PALETTE)] if tint is None else tint[rows]
         ax.scatter(
             x[rows],
             y[rows],
-            s=_SIZE if size is None else size[rows],
-            c=[colour] if tint is None else colour,
+            s=sizes[rows],
+            c=[colour] if tint is None else tint[rows],
             marker=marker,
             edgecolors=ink.INK,
-            linewidths=0.5,
-            label=f"{group} ({len(rows)})",
+            linewidths=0.4,
+            label=group,
             zorder=3,
         )
-    if tint is None:
-        _legend(ax, *ax.get_legend_handles_labels(), "Sort of design", 1.0)
+
+
+def _sorts(ax: Axes, front: Front, coloured: bool) -> float:
+    """The legend of the sorts of design with their numbers; returns where the next may begin."""
+    from matplotlib.lines import Line2D
+
+    groups = front.table["group"].to_numpy(dtype=str)
+    known = ink.markers(groups)
+    handles = [
+        Line2D([], [], ls="", marker=m, ms=5.5, mfc=c if coloured else "white", mec=ink.INK)
+        for m, c in known.values()
+    ]
+    labels = [f"{group} ({int((groups == group).sum())})" for group in known]
+    return ink.legend(ax, handles, labels, 1.0, "Sort of design")
 
 
 def _third_aim(ax: Axes, front: Front, problem: Problem, aim: Aim, x: Floats, y: Floats) -> None:
+    """The designs with a third aim as size and colour, and the legends of both."""
     import matplotlib as mpl
     from matplotlib.lines import Line2D
 
-    quantity = problem.outcome(aim.outcome)
+    unit = problem.outcome(aim.outcome).unit
     values = column(front, problem, aim.outcome)
+    ramp, largest = mpl.colormaps[ink.RAMP], _largest(front)
     share = _share(values, values)
-    ramp = mpl.colormaps[ink.RAMP]
-    _scatter(ax, front, x, y, _size(share), ramp(share))
-    groups = front.table["group"].to_numpy(dtype=str)
-    shapes = [
-        Line2D([], [], ls="", marker=marker, ms=5.5, mfc="white", mec=ink.INK, mew=0.8)
-        for marker in ink.markers(groups).values()
-    ]
-    counts = [f"{group} ({int((groups == group).sum())})" for group in ink.markers(groups)]
-    _legend(ax, shapes, counts, "Sort of design", 1.0)
+    _scatter(ax, front, x, y, largest * _size(share), ramp(share))
     steps = _steps(values)
-    sized = zip(_share(steps, values), steps, strict=True)
-    handles, labels = [], []
-    for part, step in sized:
-        area = float(_size(np.array(part)))
-        handles.append(
-            Line2D([], [], ls="", marker="o", ms=area**0.5, mfc=ramp(part), mec=ink.INK, mew=0.5)
-        )
-        labels.append(format_value(float(f"{step:.2g}"), quantity.unit))
+    parts = _share(steps, values)
+    handles = [
+        Line2D([], [], ls="", marker="o", ms=float(area) ** 0.5, mfc=ramp(part), mec=ink.INK)
+        for part, area in zip(parts, largest * _size(parts), strict=True)
+    ]
+    labels = [format_value(float(f"{step:.2g}"), unit) for step in steps]
     better = "more" if aim.sense == "most" else "less"
     title = f"{ink.words(aim.outcome)}\n({better} is better)"
-    _legend(ax, handles, labels, title, 0.94 - 0.075 * len(shapes) - 0.06)
+    ink.legend(ax, handles, labels, _sorts(ax, front, False), title)
+
+
+def _largest(front: Front) -> float:
+    return float(_LARGEST * min(1.0, _MANY / len(front)) ** 0.7)
 
 
 def _share(values: Floats, among: Floats) -> Floats:
@@ -242,26 +260,6 @@ def _steps(values: Floats) -> Floats:
     if ink.runs_over_decades(values):
         return np.geomspace(low, high, 4)
     return np.linspace(low, high, 4)
-
-
-def _legend(
-    ax: Axes, handles: Sequence[Any], labels: Sequence[str], title: str, top: float
-) -> None:
-    from matplotlib.legend import Legend
-
-    legend = Legend(
-        ax,
-        list(handles),
-        list(labels),
-        loc="upper left",
-        bbox_to_anchor=(1.03, top),
-        title=title,
-        alignment="left",
-        borderaxespad=0.0,
-        handletextpad=0.5,
-        labelspacing=0.55,
-    )
-    ax.add_artist(legend)
 
 
 def _letter(ax: Axes, letter: str, x: float, y: float) -> None:
@@ -287,25 +285,12 @@ def _along(
     """One panel: a quantity over the first aim, with the ends of its range if it was searched."""
     values = _values(front, problem, quantity)
     ends = np.array([quantity.low, quantity.high]) if isinstance(quantity, Variable) else values
-    convert = ink.measure(ax, "y", ink.words(quantity.name), quantity.unit, ends)
+    convert = ink.measure(ax, "y", ink.words(quantity.name), quantity.unit, ends, wrap=20)
     if isinstance(quantity, Variable):
         for end in convert(ends):
             ax.axhline(end, color=ink.GREY, lw=0.9, ls=(0, (5, 3)), label="searched range")
     ink.margins(ax, "y", convert(ends), 0.08)
-    groups = front.table["group"].to_numpy(dtype=str)
-    for place, (group, marker) in enumerate(ink.markers(groups).items()):
-        rows = groups == group
-        ax.scatter(
-            x[rows],
-            convert(values)[rows],
-            s=15.0,
-            c=[ink.PALETTE[place % len(ink.PALETTE)]],
-            marker=marker,
-            edgecolors=ink.INK,
-            linewidths=0.35,
-            label=group,
-            zorder=3,
-        )
+    _scatter(ax, front, x, convert(values), np.array(0.25 * _largest(front)))
 
 
 def _strip_legend(figure: Figure, ax: Axes, top: float) -> None:

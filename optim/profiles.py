@@ -19,9 +19,10 @@ if TYPE_CHECKING:
     from matplotlib.axes import Axes
     from matplotlib.figure import Figure
 
-_LEFT_MM, _WIDE_MM = 20.0, 100.0
+_LEFT_MM, _WIDE_MM = 24.0, 98.0
 _PANEL_MM, _STEP_MM = 34.0, 38.0
 _STRIP_MM, _FOOT_MM, _LINE_MM = 5.5, 12.0, 4.2
+_LETTER_MM = 1.9
 _DASHES: tuple[Any, ...] = ("-", (0, (5, 2)), (0, (1.5, 1.5)), "-.")
 _HATCHES = ("", "////", "...", "xxx", "\\\\\\\\")
 _LOG_EDGE = 0.003  # share of the length that a profile's scale of h or shear may begin at
@@ -88,7 +89,7 @@ def _panel(
     worth = profile.x >= _LOG_EDGE * profile.x[-1]
     values = np.concatenate([curve.values[worth] for curve in curves])
     name = curves[0].name if len(curves) == 1 else _shared(curves)
-    shown = ink.measure(ax, "y", name, curves[0].unit, values)
+    shown = ink.measure(ax, "y", name, curves[0].unit, values, wrap=20)
     for place, curve in enumerate(curves):
         ax.plot(
             x[worth],
@@ -98,7 +99,7 @@ def _panel(
             label=curve.name,
             zorder=3,
         )
-    ink.margins(ax, "y", shown(values), 0.1, from_zero=True)
+    ink.margins(ax, "y", shown(values), 0.1, from_zero=curves[0].unit != "K")
     ax.set_xlim(convert(_ends(profile)))
     for region in profile.regions:
         start, end = convert(region.start), convert(region.end)
@@ -106,7 +107,7 @@ def _panel(
     for mark in profile.marks.values():
         ax.axvline(convert(mark), color=ink.INK, lw=0.9, ls=(0, (6, 3)), zorder=2)
     if len(curves) > 1:
-        ax.legend(loc="upper left", bbox_to_anchor=(1.02, 1.0), borderaxespad=0.0)
+        ink.legend(ax, *ax.get_legend_handles_labels(), 1.0)
 
 
 def _shared(curves: list[Curve]) -> str:
@@ -116,17 +117,17 @@ def _shared(curves: list[Curve]) -> str:
 
 
 def _rows(profile: Profile) -> dict[str, int]:
-    """In which line above the strip the name of each mark stands, so that none overlap."""
-    right: list[float] = []
+    """In which line above the strip the name of each mark stands, from right to left.
+
+    A name stands to the right of its line; none overlaps another or is crossed by a line.
+    """
+    left: list[float] = []
     rows = {}
-    for name, place in sorted(profile.marks.items(), key=lambda mark: mark[1]):
-        left = place / profile.x[-1] * _WIDE_MM
-        wide = 1.9 * len(name) + 4.0
-        free = [row for row, end in enumerate(right) if end < left]
-        row = free[0] if free else len(right)
-        if not free:
-            right.append(0.0)
-        right[row] = left + wide
+    for name, place in sorted(profile.marks.items(), key=lambda mark: -mark[1]):
+        start = place / profile.x[-1] * _WIDE_MM
+        end = start + _LETTER_MM * len(name) + 2.0
+        row = next((row for row, edge in enumerate(left) if end < edge), len(left))
+        left[row:] = [start]  # the lines of marks further left would run through lower names
         rows[name] = row
     return rows
 
@@ -149,7 +150,7 @@ def _strip(
         start, end = convert(region.start), convert(region.end)
         ax.axvspan(start, end, facecolor="none", edgecolor=ink.GREY, lw=0.7)
         ax.axvspan(start, end, facecolor="none", hatch=hatches[region.name], lw=0, zorder=0)
-        if (region.end - region.start) / length * _WIDE_MM > 1.9 * len(region.name) + 1.0:
+        if (region.end - region.start) / length * _WIDE_MM > _LETTER_MM * len(region.name) + 1.0:
             plate = {"facecolor": "white", "edgecolor": "none", "pad": 1.0}
             middle = 0.5 * (start + end)
             ax.text(middle, 0.47, region.name, ha="center", va="center", fontsize=8.5, bbox=plate)
@@ -163,13 +164,12 @@ def _strip(
             ls=(0, (6, 3)),
             clip_on=False,
         )
-        at_end = place / length * _WIDE_MM + 1.9 * len(name) > _WIDE_MM + 40.0
         ax.annotate(
             name,
             (convert(place), height),
-            xytext=(-3 if at_end else 3, 0),
+            xytext=(3, 0),
             textcoords="offset points",
-            ha="right" if at_end else "left",
+            ha="left",
             va="bottom",
             annotation_clip=False,
         )
@@ -177,9 +177,4 @@ def _strip(
         Patch(facecolor="white", edgecolor=ink.GREY, hatch=hatch, label=name)
         for name, hatch in hatches.items()
     ]
-    last = ax.figure.axes[-1]
-    last.add_artist(
-        last.legend(
-            handles=handles, loc="lower left", bbox_to_anchor=(1.02, 0.0), borderaxespad=0.0
-        )
-    )
+    ink.legend(ax, handles, list(hatches), 1.0)

@@ -21,8 +21,8 @@ if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
 _VIEW_MM, _VIEW_HIGH_MM = 104.0, 40.0  # room for the largest design
-_DETAIL_MM, _DETAIL_HIGH_MM = 42.0, 27.0
-_LEFT_MM, _CAPTION_MM, _FOOT_MM = 14.0, 15.0, 12.0
+_DETAIL_MM, _DETAIL_HIGH_MM, _BAR_MM = 42.0, 22.0, 6.0
+_LEFT_MM, _CAPTION_MM, _BELOW_MM, _FOOT_MM = 14.0, 14.0, 3.0, 10.0
 _WIRE_MM = 2.5  # least diameter of a wire on paper, in the detail
 _FILL = {"plate": "#4D4D4D", "wire": "#D55E00", "layer": "#CDE3F2"}
 _ROUND = np.array([1.0, 2.0, 5.0])
@@ -48,22 +48,22 @@ def sketch_picture(front: Front, problem: Problem, figure: Figure | None = None)
         rows = _rows(front, problem)
         widest, highest = max(row.sketch.width for row in rows), max(row.high for row in rows)
         scale = min(_VIEW_MM / widest, _VIEW_HIGH_MM / highest)  # mm on paper per m
-        heights = [max(_DETAIL_HIGH_MM, scale * row.high) for row in rows]
-        title = f"{problem.title}: side view, flow from the left"
-        top = ink.head_mm(title)
-        total = top + sum(heights) + _CAPTION_MM * len(rows) + _FOOT_MM
+        heights = [max(_DETAIL_HIGH_MM + _BAR_MM, scale * row.high) for row in rows]
+        below = "Side views, flow from the left, with a detail of the wire or the leading edge"
+        top = ink.head_mm(problem.title, below)
+        total = top + sum(heights) + (_CAPTION_MM + _BELOW_MM) * len(rows) + _FOOT_MM
         figure = figure or ink.sheet(total)
-        ink.head(figure, title)
+        ink.head(figure, problem.title, below)
         upper = ink.height_mm(figure) - top
         for row, height in zip(rows, heights, strict=True):
             _caption(figure, row, upper)
             bottom = upper - _CAPTION_MM - height
             view = ink.panel(figure, _LEFT_MM, bottom, _VIEW_MM, height)
             _whole(view, row, _VIEW_MM / scale, height / scale, 1.0 / scale)
-            lift = bottom + 0.5 * (height - _DETAIL_HIGH_MM)
+            lift = bottom + 0.5 * (height - _DETAIL_HIGH_MM - _BAR_MM) + _BAR_MM
             ax = ink.panel(figure, 124.0, lift, _DETAIL_MM, _DETAIL_HIGH_MM)
             _detail(ax, row.sketch)
-            upper = bottom
+            upper = bottom - _BELOW_MM
         _foot(figure, widest, scale)
         return figure
 
@@ -188,20 +188,18 @@ def _detail(ax: Axes, sketch: Sketch) -> None:
 
 
 def _bar(ax: Axes, wide: float, tall: float) -> None:
-    """A scale bar of a round length in the upper right corner."""
-    size = _rounded(0.3 * wide)
-    right, level = ax.get_xlim()[1] - 0.05 * wide, ax.get_ylim()[1] - 0.07 * tall
-    ax.plot([right - size, right], [level, level], color=ink.INK, lw=2.0, solid_capstyle="butt")
-    plate = {"facecolor": "white", "edgecolor": "none", "pad": 0.8, "alpha": 0.85}
-    ax.text(
-        right - 0.5 * size,
-        level - 0.04 * tall,
-        format_value(size, "m"),
-        ha="center",
-        va="top",
-        fontsize=8.0,
-        bbox=plate,
+    """A scale bar of a round length below the detail, at its right."""
+    size, mm = _rounded(0.3 * wide), tall / _DETAIL_HIGH_MM
+    left, level = ax.get_xlim()[1] - 0.36 * wide, ax.get_ylim()[0] - 2.8 * mm
+    ax.plot(
+        [left - size, left],
+        [level, level],
+        color=ink.INK,
+        lw=2.0,
+        solid_capstyle="butt",
+        clip_on=False,
     )
+    ax.text(left + 1.5 * mm, level, format_value(size, "m"), va="center", fontsize=8.5)
 
 
 def _rounded(size: float) -> float:
