@@ -157,7 +157,7 @@ def test_a_missing_case_names_the_nearest(tmp_path):
     (tmp_path / "shelf.toml").write_text(good("plate"), "utf-8")
     with pytest.raises(CaseError, match=r"nearest: .*shelf\.toml"):
         load_case(tmp_path / "shelv.toml")
-    with pytest.raises(CaseError, match="ready-made: citrus-oil"):
+    with pytest.raises(CaseError, match="ready-made: cellar-water, citrus-oil"):
         load_case("zzzz")
 
 
