@@ -26,6 +26,11 @@ PR_LOW, PR_HIGH = 0.5, 1e5
 NU_TEMPERATURE = 7.540700874  # developed, both walls at one temperature; Graetz, computed
 NU_FLUX = 140.0 / 17.0  # developed, uniform flux from both walls; exact
 SHEAR_DEVELOPED = 24.0  # f Re_D of the parabola; exact
+# Near the inlet each wall is one plate under a core that makes room for the layers: mean shear,
+# and one over what core velocity and Kd exceed 1 by, times z (half a gap is a quarter of D_h).
+LEAD_SHEAR = 2.0 * flat_plate.BLASIUS
+LEAD_CORE = 0.25 / flat_plate.DISPLACEMENT
+LEAD_MOMENTUM = 0.25 / (flat_plate.DISPLACEMENT - flat_plate.BLASIUS)
 _FINE = 16  # rows of the working table to one row of the file
 
 
@@ -138,13 +143,6 @@ def lead_heat(pr: Floats, flux: bool) -> Floats:
     """
     share = 1.5 if flux else 2.0
     return share * flat_plate.laminar_heat_constant(pr, flux) / np.sqrt(pr)
-
-
-LEAD_SHEAR = 2.0 * flat_plate.BLASIUS
-# Layers of one plate under a core that makes room for them: at half a gap of D_h/4 the core is
-# faster by 4 delta*/(z D_h^2/...), Kd larger by the same less the share that theta holds back.
-LEAD_CORE = 0.25 / flat_plate.DISPLACEMENT
-LEAD_MOMENTUM = 0.25 / (flat_plate.DISPLACEMENT - flat_plate.BLASIUS)
 
 
 def _heat(law: str, pr: Floats, base: float) -> Entrance:

@@ -27,8 +27,10 @@ NODES = np.geomspace(entrance.PR_LOW, entrance.PR_HIGH, 99)
 _MIDDLE = 40  # the node from which the fits are continued to both ends, Pr about 70
 _DISTANCES = np.geomspace(3e-8, 10.0, 150)  # x+ or x* of the fitted points
 _PAIRS = 3  # complex pairs among the roots of D; with one real root the degree is 7
-_KEEP = 0.03  # pull towards the coefficients foreseen from the last nodes, for smoothness
+_KEEP = {1: 0.03, -1: 1.0}  # pull to what the last nodes foresee, for smoothness; up, down in Pr
 _LOCAL = 0.6  # weight of a local deviation against one of a mean
+_RISE = 30.0  # weight of a local value that rises where it should fall
+_WATCHED = np.geomspace(1e-3, 10.0, 300)  # z where that is watched
 
 
 @dataclass(frozen=True)
@@ -48,6 +50,15 @@ class Target:
             return form.value(self.z) / self.mean - 1.0, np.zeros(1)
         law = self.kind(form)
         return law.mean(self.z) / self.mean - 1.0, law.local(self.z) / self.local - 1.0
+
+    def rises(self, form: Entrance) -> Floats:
+        """How far the local Nusselt number or friction factor rises from one z to the next."""
+        if self.kind is None:
+            local = form.value(_WATCHED)
+        else:
+            local = self.kind(form).local(_WATCHED)
+            local = 1.0 / local if self.kind is Resistance else local
+        return np.maximum(np.diff(local), 0.0) / self.base
 
 
 def heat_target(flow: Developing, index: int, flux: bool) -> Target:
@@ -111,12 +122,15 @@ def _scales(bottom: Floats) -> Floats:
     return np.asarray(bottom[-1] ** (np.arange(1, degree) / degree))
 
 
-def fit(target: Target, guess: Floats, keep: float = _KEEP) -> Floats:
-    """Parameters that meet the target best in least squares, near `guess`."""
+def fit(target: Target, guess: Floats, keep: float) -> Floats:
+    """Parameters that meet the target best in least squares, near `guess`, local values falling."""
 
     def misses(parameters: Floats) -> Floats:
-        mean, local = target.deviations(form_of(parameters, target))
-        return np.concatenate([1e3 * mean, 1e3 * _LOCAL * local, keep * (parameters - guess)])
+        form = form_of(parameters, target)
+        mean, local = target.deviations(form)
+        ripple = _RISE * target.rises(form)
+        drift = keep * (parameters - guess)
+        return np.concatenate([1e3 * mean, 1e3 * _LOCAL * local, 1e3 * ripple, drift])
 
     return np.asarray(least_squares(misses, guess, x_scale="jac", max_nfev=3000).x)
 
@@ -142,7 +156,7 @@ def continued(targets: list[Target]) -> list[Floats]:
         while 0 <= index < len(targets):
             last = found[index - way]
             foreseen = 2.0 * last - found.get(index - 2 * way, last)
-            found[index] = fit(targets[index], foreseen)
+            found[index] = fit(targets[index], foreseen, _KEEP[way])
             index += way
     return [found[index] for index in range(len(targets))]
 

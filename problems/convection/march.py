@@ -261,7 +261,9 @@ def _advance(
     across = -(slope.now * stream + slope.history(last.stream, before.stream))
     cold, warm = last.cold.copy(), last.warm.copy()
     if active.any():
-        old = np.stack([state.velocity * np.stack([state.cold, state.warm]) for state in (last, before)])
+        old = np.stack(
+            [state.velocity * np.stack([state.cold, state.warm]) for state in (last, before)]
+        )
         cold[active], warm[active] = _energy(
             grid, pr[active], slope, velocity, across, slope.history(*old[:, :, active])
         )
