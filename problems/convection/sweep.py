@@ -20,6 +20,7 @@ Floats = NDArray[np.float64]
 
 _XI_END = 4.5  # intermittency there is 0.9998: the layer counts as turbulent
 _IN_TRANSITION, _IN_TURBULENCE = 7, 7  # Gauss points in each stretch
+_THINNEST = 20.0  # Re_theta below which no layer is turbulent; asked for only where none is
 _MERGED_LAMINAR = 0.0025  # Re_x over Re_D^2 where laminar layers have met
 
 
@@ -160,7 +161,8 @@ def sweep(surface: Surface) -> Sweep:
         natural = 1.0 / (1.0 / natural + 1.0 / (_MERGED_LAMINAR * surface.re_d**2))
     wire = _wire(surface)
     onset = transition.onset(natural, surface.turbulence, wire)
-    ahead = np.minimum(onset.re_x, surface.re_l)
+    lasting = sustains == 0.0  # a layer that cannot become turbulent is laminar to the end
+    ahead = np.where(lasting, surface.re_l, np.minimum(onset.re_x, surface.re_l))
     totals = _Totals(surface, laminar, ahead)
     turbulent_here = np.zeros_like(surface.re_l)
     if wire is not None:
@@ -168,7 +170,7 @@ def sweep(surface: Surface) -> Sweep:
     step = np.zeros_like(surface.re_l) if wire is None else wire.thickening(turbulent_here)
     re_theta = _re_theta_at(surface, onset, wire, step * (1.0 - turbulent_here), ahead)
     momentum = _laminar_momentum(surface)
-    index = np.flatnonzero((onset.re_x < surface.re_l) & (sustains > 0.0))
+    index = np.flatnonzero(ahead < surface.re_l)
     if index.size:
         momentum[index], re_theta[index] = _behind_onset(
             surface, onset, sustains, re_theta, index, totals, momentum[index]
@@ -257,7 +259,7 @@ def _wire(surface: Surface) -> Wire | None:
     if re_d is not None:
         speed_up = entrance.core_velocity(np.sqrt(re_x) / re_d)
         blockage = 4.0 * surface.wire_k / re_d  # wires on both walls of the gap
-    behind_end = flat_plate.smooth_step(re_x / surface.re_l, 1.0, 1.02)
+    behind_end = flat_plate.smooth_step(re_x / surface.re_l, 1.0, 1.1)
     return Wire(
         re_x=re_x,
         re_height=surface.wire_k,
@@ -362,6 +364,7 @@ def mixed(
 
 def turbulent(surface: Surface, re_x: Floats, re_theta: Floats) -> tuple[Floats, Floats]:
     """Local cf and St of the turbulent layer, in a passage joined to developed flow."""
+    re_theta = np.maximum(re_theta, _THINNEST)
     cf = flat_plate.turbulent_friction(re_theta)
     stanton = flat_plate.turbulent_stanton(cf, surface.pr)
     if surface.re_rough is not None:

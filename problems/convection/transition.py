@@ -24,6 +24,7 @@ Floats = NDArray[np.float64]
 
 QUIET_LIMIT = 2.8e6  # onset Re_x in a quiet stream, Schubauer and Skramstad 1948 (from memory)
 WIRE_LOW, WIRE_DESIGN = 826.0, 900.0  # Gibbings 1959; Kraemer 1961 (both from memory)
+_WIRE_NONE = 740.0  # where the smooth weight begins; as wide below 826 as it is above
 HOLDS, FAILS = 320.0, 200.0  # Re_theta behind the wire, Preston 1958 (from memory)
 FORCED_LENGTH = 2e4  # Re from an effective wire to full turbulence, Kraemer 1961 (from memory)
 COMPLETE = 3.3433  # xi at which the intermittency is 0.99
@@ -83,8 +84,8 @@ class Wire:
     `re_x` is U x/nu of its place, `re_height` U k/nu of its diameter, `speed_up` the velocity
     outside the layer there over the nominal one, `re_theta` the laminar layer's there,
     `blockage` the wires' share of the gap (0 on a single plate), `drag_coefficient` on the mean
-    square of the undisturbed profile over the wire's height, `on_plate` 1 on the plate and 0
-    behind its end.
+    square of the undisturbed profile over the wire's height, `on_plate` 1 on the plate, fading to
+    0 over a tenth of its length behind its end.
     """
 
     re_x: Floats
@@ -130,8 +131,8 @@ class Wire:
         return step * self.squeeze * self.on_plate
 
     def trips(self) -> Floats:
-        """Smooth weight of the criterion U k/nu: 0 at 826, 1 at 900 and above."""
-        return smooth_step(self.reynolds, WIRE_LOW, WIRE_DESIGN) * self.on_plate
+        """Smooth weight of the criterion U k/nu: a little over half at 826, 1 from 900."""
+        return smooth_step(self.reynolds, _WIRE_NONE, WIRE_DESIGN) * self.on_plate
 
     def holds(self) -> Floats:
         """Smooth weight of the criterion Re_theta behind the wire: 0 at 200, 1 from 320."""

@@ -20,7 +20,7 @@ _SHARED = (
     Outcome("film_temperature", "K", "temperature at which the properties are taken"),
     Outcome("plate_area", "m2", "swept area of all plates"),
     Outcome("plate_mass", "kg", "mass of the plates"),
-    Outcome("onset", "m", "where transition begins; beyond the length if the plate stays laminar"),
+    Outcome("onset", "m", "where transition begins; the length if the plate stays laminar"),
     Outcome("turbulent_share", "1", "share of the plate length that is turbulent"),
     Outcome("length_reynolds", "1", "Reynolds number on the plate length"),
     Outcome("wire_reynolds", "1", "velocity outside the layer times wire diameter over viscosity"),

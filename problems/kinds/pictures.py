@@ -89,6 +89,8 @@ def _marks(batch: Batch) -> dict[str, float]:
     if batch.settings["trip_height"][0] > 0.0:
         marks["wire"] = float(batch.settings["trip_position"][0])
     marks["onset"] = float(batch.outcomes["onset"][0])
+    if marks["onset"] >= length:
+        del marks["onset"]
     return {name: place for name, place in marks.items() if place <= length}
 
 

@@ -138,7 +138,7 @@ def _common(
         "heat_per_power": np.abs(outcomes["heat"]) / np.maximum(outcomes["fan_power"], 1e-12),
         "film_temperature": walked.film,
         "plate_mass": one_side * given["thickness"] * case.plates.material_density,
-        "onset": sweep.onset.re_x / walked.surface.re_l * given["length"],
+        "onset": np.minimum(sweep.onset.re_x / walked.surface.re_l, 1.0) * given["length"],
         "turbulent_share": sweep.turbulent_share,
         "length_reynolds": walked.surface.re_l,
         "wire_reynolds": wired,

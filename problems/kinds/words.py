@@ -85,7 +85,7 @@ def remarks(case: Case, batch: Batch) -> tuple[str, ...]:
 def _regime(batch: Batch, length: float) -> str:
     """One sentence on where the layer turns."""
     sweep = batch.walked.sweep
-    onset = float(batch.outcomes["onset"][0])
+    onset = float(sweep.onset.re_x[0] / batch.walked.surface.re_l[0]) * length
     share = float(sweep.turbulent_share[0])
     sustains = float(sweep.sustains[0])
     if sustains == 0.0:
