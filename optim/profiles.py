@@ -19,7 +19,7 @@ if TYPE_CHECKING:
     from matplotlib.axes import Axes
     from matplotlib.figure import Figure
 
-_LEFT_MM, _WIDE_MM = 24.0, 98.0
+_LEFT_MM, _WIDE_MM = 25.0, 97.0
 _PANEL_MM, _STEP_MM = 34.0, 38.0
 _STRIP_MM, _FOOT_MM, _LINE_MM = 5.5, 12.0, 4.2
 _LETTER_MM = 1.9
@@ -89,7 +89,7 @@ def _panel(
     worth = profile.x >= _LOG_EDGE * profile.x[-1]
     values = np.concatenate([curve.values[worth] for curve in curves])
     name = curves[0].name if len(curves) == 1 else _shared(curves)
-    shown = ink.measure(ax, "y", name, curves[0].unit, values, wrap=20)
+    shown = ink.measure(ax, "y", name, curves[0].unit, values, wrap=22)
     for place, curve in enumerate(curves):
         ax.plot(
             x[worth],
