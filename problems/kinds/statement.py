@@ -68,7 +68,7 @@ class SweptPlates(Problem):
 
     def evaluate(self, designs: Floats) -> Evaluation:
         """Evaluate designs of shape (n, number of variables); see `Problem.evaluate`."""
-        designs = np.asarray(designs, dtype=float).reshape(-1, len(self.variables))
+        designs = np.atleast_2d(np.asarray(designs, dtype=float))
         parts = [self._evaluate(designs[k : k + CHUNK]) for k in range(0, len(designs), CHUNK)]
         return joined(parts) if len(parts) > 1 else parts[0]
 
