@@ -23,9 +23,9 @@ Floats = NDArray[np.float64]
 Settings = Mapping[str, Floats]
 
 GRAVITY = 9.80665
-_TOLERANCE = 0.005  # K, film temperature
+_TOLERANCE = 0.02  # K, film temperature
 _ROUNDS = 8
-CHUNK = 1024  # designs at once: the arrays of one walk then stay in the processor's cache
+CHUNK = 4096  # designs at once: arrays of one walk stay in the processor's cache
 
 
 @dataclass(frozen=True)
@@ -129,7 +129,7 @@ def walk(
     """Walk along every design with properties at the film temperature that comes out of it.
 
     `film_of` gives the film temperature that a walk implies; from `start` the two are brought
-    together to 5 mK by secant steps. Designs that have settled are not walked again.
+    together to 20 mK by secant steps. Designs that have settled are not walked again.
     """
     film = np.clip(start, fluid.low, fluid.high)
     done = _walk_at(case, fluid, given, film)
