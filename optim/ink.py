@@ -99,11 +99,6 @@ def head_mm(title: str, below: str = "") -> float:
     return 3.0 + 4.6 * lines + 4.2 * len(textwrap.wrap(below, 104, max_lines=2)) + 2.0
 
 
-def words(name: str) -> str:
-    """The name of a quantity as prose: "fan_power" -> "fan power"."""
-    return name.replace("_", " ")
-
-
 def markers(groups: NDArray[np.str_]) -> dict[str, tuple[str, str]]:
     """Marker shape and colour of each sort of design, the commonest first.
 

@@ -11,6 +11,7 @@ import numpy as np
 
 from optim.archive import Indices, nondominated, thin_evenly
 from optim.front import Front
+from optim.text import words
 from problems.problem import Aim, Floats, Problem
 
 _USUAL = ("heat", "fan_power")  # the two that an engineer looks at first, where both are aims
@@ -54,13 +55,13 @@ def picked(front: Front, problem: Problem) -> tuple[Pick, ...]:
         return ()
     first, *others = leading(problem)
     aims = _to_be_least(front, problem)
-    named = {_best(aims, 0): f"{first.sense} {first.outcome}".replace("_", " ")}
+    named = {_best(aims, 0): words(f"{first.sense} {first.outcome}")}
     if others:
         second = others[0]
         low, high = _best(aims, 1), _best(aims, 0)
         middle = _middle(aims[:, :2], {low, high})
         named = {
-            low: f"{second.sense} {second.outcome}".replace("_", " "),
+            low: words(f"{second.sense} {second.outcome}"),
             **({} if middle is None else {middle: "middle"}),
             **({} if high == low else named),
         }
@@ -69,11 +70,16 @@ def picked(front: Front, problem: Problem) -> tuple[Pick, ...]:
 
 
 def spread(front: Front, problem: Problem, count: int = 7) -> Indices:
-    """At most `count` rows of a front's table, the picked ones among them, in its order."""
+    """At most `count` rows of a front's table, the picked ones among them.
+
+    In the order of the second leading aim (of the only one, where there is one), best first.
+    """
     if not len(front):
         return np.empty(0, dtype=np.intp)
     first = np.array([pick.row for pick in picked(front, problem)], dtype=np.intp)
-    return thin_evenly(_ranks(_to_be_least(front, problem)[:, :2]), count, first)
+    aims = _to_be_least(front, problem)[:, :2]
+    rows = thin_evenly(_ranks(aims), count, first)
+    return rows[np.argsort(aims[rows, -1], kind="stable")]
 
 
 def _to_be_least(front: Front, problem: Problem) -> Floats:

@@ -19,6 +19,7 @@ from optim.picks import column, designs, leading, picked
 from optim.profiles import profile_picture
 from optim.runs import PICTURES, free_name, writable
 from optim.sketches import sketch_picture
+from optim.text import words
 from problems.problem import Aim, Floats, Outcome, Problem, Variable
 from problems.units import format_value
 
@@ -135,7 +136,7 @@ def _below(front: Front, problem: Problem) -> str:
     if len(problem.aims) == 1:
         count = f"the best design and {len(front) - 1} near it" if len(front) > 1 else count
     letters = "; ".join(f"{pick.letter} {pick.label}" for pick in picked(front, problem))
-    more = [ink.words(aim.outcome) for aim in leading(problem)[3:]]
+    more = [words(aim.outcome) for aim in leading(problem)[3:]]
     also = f"; {' and '.join(more)}: see {VARIABLES}" if more else ""
     return f"{count[0].upper()}{count[1:]}. {letters}{also}"
 
@@ -166,7 +167,7 @@ def _scaled(ax: Axes, side: Any, front: Front, problem: Problem, name: str) -> F
     values = _values(front, problem, quantity)
     senses = {aim.outcome: aim.sense for aim in problem.aims}
     note = {"most": "more is better", "least": "less is better"}.get(senses.get(name, ""), "")
-    shown = ink.measure(ax, side, ink.words(name), quantity.unit, values, note)(values)
+    shown = ink.measure(ax, side, words(name), quantity.unit, values, note)(values)
     ink.margins(ax, side, shown, 0.08)
     return shown
 
@@ -233,7 +234,7 @@ def _third_aim(ax: Axes, front: Front, problem: Problem, aim: Aim, x: Floats, y:
     ]
     labels = [format_value(float(f"{step:.2g}"), unit) for step in steps]
     better = "more" if aim.sense == "most" else "less"
-    title = f"{ink.words(aim.outcome)}\n({better} is better)"
+    title = f"{words(aim.outcome)}\n({better} is better)"
     ink.legend(ax, handles, labels, _sorts(ax, front, False), title)
 
 
@@ -285,7 +286,7 @@ def _along(
     """One panel: a quantity over the first aim, with the ends of its range if it was searched."""
     values = _values(front, problem, quantity)
     ends = np.array([quantity.low, quantity.high]) if isinstance(quantity, Variable) else values
-    convert = ink.measure(ax, "y", ink.words(quantity.name), quantity.unit, ends, wrap=20)
+    convert = ink.measure(ax, "y", words(quantity.name), quantity.unit, ends, wrap=20)
     if isinstance(quantity, Variable):
         for end in convert(ends):
             ax.axhline(end, color=ink.GREY, lw=0.9, ls=(0, (5, 3)), label="searched range")

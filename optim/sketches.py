@@ -13,6 +13,7 @@ import numpy as np
 from optim import ink
 from optim.front import Front
 from optim.picks import Pick, column, designs, leading, picked
+from optim.text import words
 from problems.problem import Floats, Problem, Shape, Sketch
 from problems.units import format_value
 
@@ -74,7 +75,7 @@ def _rows(front: Front, problem: Problem) -> list[_Row]:
     for pick in picked(front, problem):
         sketch = problem.sketch(places[pick.row])
         told = [
-            f"{ink.words(aim.outcome)} "
+            f"{words(aim.outcome)} "
             + format_value(
                 float(column(front, problem, aim.outcome)[pick.row]),
                 problem.outcome(aim.outcome).unit,

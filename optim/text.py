@@ -37,8 +37,8 @@ _SIZES = "Sizes and places"
 
 
 def words(name: str) -> str:
-    """The name of a quantity as prose: "fan_power" -> "fan power"."""
-    return name.replace("_", " ")
+    """The name of a quantity as prose: "gap_reynolds" -> "gap Reynolds"."""
+    return name.replace("_", " ").replace("reynolds", "Reynolds")
 
 
 def table(rows: Iterable[Sequence[str]], right: Sequence[int] = ()) -> str:
@@ -147,7 +147,7 @@ def of_front(account: Account, problem: Problem) -> str:
     parts = [
         f"{account['title']}\n{count} {what}; {effort}: {account['stopped_because']}.\n",
         section(f"Along the front ({', '.join(letters)})", _side_by_side(shown, problem)),
-        section("Beware", sentences(_counted(account, count))),
+        section("Cautions, with the number of designs", sentences(_counted(account, count))),
     ]
     return "\n".join(filter(None, parts)).rstrip()
 

@@ -14,7 +14,7 @@ import numpy as np
 import pandas as pd
 import pytest
 
-from optim import Front, progress
+from optim import Front, progress, text
 from optim.cli import main
 from optim.search import Progress
 from problems import build, load_case, ready_made
@@ -230,7 +230,7 @@ def test_point_prints_every_outcome_with_its_unit(run, case):
     lines = [" ".join(line.split()) for line in out.splitlines()]
     problem = build(load_case(case))
     for outcome in problem.outcomes:
-        assert any(line.startswith(f"{outcome.name.replace('_', ' ')} ") for line in lines)
+        assert any(line.startswith(f"{text.words(outcome.name)} ") for line in lines)
     assert any(line.startswith("gap 8 mm") for line in lines)
     assert any(line.startswith("length 300 mm") for line in lines)
     for heading in ("Heat and power", "Forces and pressures", "Remarks", "Laws", "Limits"):
