@@ -22,7 +22,10 @@ Bools = NDArray[np.bool_]
 
 @dataclass(frozen=True)
 class Variable:
-    """A quantity that the search may move, in SI, between `low` and `high`."""
+    """A quantity that the search may move, in SI, between `low` and `high`.
+
+    `only_with` names another variable without which (at 0) this one means nothing.
+    """
 
     name: str
     unit: str
@@ -30,6 +33,7 @@ class Variable:
     high: float
     meaning: str
     scale: Literal["linear", "log"] = "linear"
+    only_with: str | None = None
 
     @property
     def column(self) -> str:
@@ -190,6 +194,13 @@ class Problem(ABC):
     @abstractmethod
     def remarks(self, design: Floats) -> tuple[str, ...]:
         """Plain sentences about one design of shape (number of variables,): regimes, verdicts."""
+
+    def plainer(self, designs: Floats) -> Floats:
+        """The same designs, shape (n, number of variables), without parts that may do nothing.
+
+        A search tries them beside what it found; as given where nothing can be left out.
+        """
+        return designs
 
     def whole(self, design: Floats) -> tuple[Problem, Floats] | None:
         """A problem and design that can be built, with the nearest whole count of what repeats.

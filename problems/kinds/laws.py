@@ -46,7 +46,7 @@ Ranges = tuple[tuple[Law, Outside], ...]
 
 
 def _laminar_heat(walk: Walk) -> Bools:
-    return walk.surface.pr < 0.5
+    return (walk.surface.pr < 0.5) | (walk.surface.pr > 1e4)
 
 
 def _laminar_layer(walk: Walk) -> Bools:
@@ -108,7 +108,11 @@ _COMMON: Ranges = (
         _laminar_layer,
     ),
     (
-        Law("laminar heat", "Churchill and Ozoe 1973", "all Pr, here from 0.5"),
+        Law(
+            "laminar heat",
+            "form of Churchill and Ozoe 1973, constants from the similarity solution",
+            "Pr 0.5 to 1e4",
+        ),
         _laminar_heat,
     ),
     (

@@ -40,7 +40,9 @@ _STACK = (
     Outcome("wire_drop", "Pa", "part of the pressure drop: trip wires"),
     Outcome("exit_drop", "Pa", "part of the pressure drop: exit (negative: pressure recovered)"),
     Outcome("gap_reynolds", "1", "Reynolds number on hydraulic diameter (twice the gap)"),
-    Outcome("approach", "delta K", "surface temperature at the outlet less outlet temperature, absolute"),
+    Outcome(
+        "approach", "delta K", "surface temperature at the outlet less outlet temperature, absolute"
+    ),
 )
 
 OUTCOMES = {"plate": _SHARED, "stack": _SHARED + _STACK}

@@ -33,7 +33,8 @@ def profile(case: Case, batch: Batch) -> Profile:
     layer = theta * local.thickness
     thick = "distance from the wall at 99 % of the outer velocity"
     if "gap" in batch.settings:
-        layer = np.minimum(layer, 0.5 * float(batch.settings["gap"][0]))
+        half = 0.5 * float(batch.settings["gap"][0])
+        layer, theta = np.minimum(layer, half), np.minimum(theta, 2.0 / 15.0 * half)  # parabola
         thick += ", at most half the gap"
     return Profile(
         x=x,

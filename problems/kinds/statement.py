@@ -113,6 +113,14 @@ class SweptPlates(Problem):
         """Plain sentences about one design; see `Problem.remarks`."""
         return words.remarks(self.case, self.batch(np.atleast_2d(design)))
 
+    def plainer(self, designs: Floats) -> Floats:
+        """The same designs without a wire, where the case lets the wire be left away."""
+        plain = np.array(designs, dtype=float)
+        for axis, variable in enumerate(self.variables):
+            if variable.name == "trip_height" and variable.low == 0.0:
+                plain[:, axis] = 0.0
+        return plain
+
     def whole(self, design: Floats) -> tuple[Problem, Floats] | None:
         """The same design with a whole number of plates, or None where it has one already."""
         if self.kind != "stack" or self.case.plates.count is not None:

@@ -83,6 +83,7 @@ def variables(case: Case) -> tuple[Variable, ...]:
             high=span.high,
             meaning=_MEANING[name],
             scale="log" if span.low > 0.0 and span.high > 3.0 * span.low else "linear",
+            only_with="trip_height" if name in ("trip_share", "trip_position") else None,
         )
         for name, (span, unit) in spans(case).items()
         if not span.fixed
@@ -101,6 +102,7 @@ def settings(case: Case, designs: Floats) -> dict[str, Floats]:
         values["trip_position"] = values.pop("trip_share") * values["length"]
     for name in ("trip_position", "trip_height"):
         values.setdefault(name, np.zeros(count))
+    values["trip_position"] = np.where(values["trip_height"] > 0.0, values["trip_position"], 0.0)
     values["width"] = np.full(count, case.plates.width)
     values["thickness"] = np.full(count, case.plates.thickness)
     return values
