@@ -7,22 +7,20 @@ numbers at once. The fast laws fitted to it are in `entrance`; turbulence is not
 from __future__ import annotations
 
 from dataclasses import dataclass, fields
-from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.integrate import solve_ivp
 from scipy.interpolate import CubicSpline
 from scipy.linalg import solve_banded
+
+from problems.convection.similarity import FAR, Similarity
 
 Floats = NDArray[np.float64]
 
 # Inside this module lengths across the flow are in half gaps, velocities in mean velocities, and
 # X = x nu / (u (s/2)^2) = 16 x+ runs along the flow; wall at 0, middle of the gap at 1.
 _STRETCH = 16.0
-_FAR = 14.0  # outer edge of the similarity solutions, in x Re_x^-1/2
 _DEVELOPED = 0.3  # x* from which a temperature profile keeps its shape (next mode down by e^-100)
-_BLASIUS_WALL = 0.33205733621519630  # f''(0), Blasius 1908; computed
 
 
 @dataclass(frozen=True)
@@ -76,7 +74,7 @@ class _Grid:
 
     def at_faces(self, values: Floats) -> Floats:
         """Cell values (..., n) at the inner faces (..., n - 1)."""
-        return self.lower * values[..., :-1] + (1.0 - self.lower) * values[..., 1:]
+        return np.asarray(self.lower * values[..., :-1] + (1.0 - self.lower) * values[..., 1:])
 
     def wall_slope(self, values: Floats) -> Floats:
         """Slope at the wall of values (..., n) that are zero there, second order."""
@@ -84,7 +82,7 @@ class _Grid:
 
     def wall_value(self, values: Floats) -> Floats:
         """Value at the wall of values (..., n) that fall from it with slope -1."""
-        return (self.wall_slope(values) + 1.0) / (self.near - self.next)
+        return np.asarray((self.wall_slope(values) + 1.0) / (self.near - self.next))
 
 
 @dataclass(frozen=True)
@@ -102,6 +100,10 @@ class _State:
     gradient: float
     cold: Floats
     warm: Floats
+
+    def carried(self, which: NDArray[np.bool_]) -> Floats:
+        """Velocity times both temperatures for some Prandtl numbers, (2, k, n)."""
+        return self.velocity * np.stack([self.cold[which], self.warm[which]])
 
 
 @dataclass(frozen=True)
@@ -125,64 +127,6 @@ class _Backward:
         return self.last * last + self.before * before
 
 
-class Similarity:
-    """The layer on one plate: Blasius' velocity, Pohlhausen's temperature and the flux case."""
-
-    def __init__(self, points: int = 8000) -> None:
-        self.eta = _FAR * np.expm1(8.0 * np.linspace(0.0, 1.0, points)) / np.expm1(8.0)
-        solution = solve_ivp(
-            lambda _, f: (f[1], f[2], -0.5 * f[0] * f[2]),
-            (0.0, _FAR),
-            (0.0, 0.0, _BLASIUS_WALL),
-            t_eval=self.eta,
-            rtol=1e-12,
-            atol=1e-14,
-            method="DOP853",
-        )
-        self.stream, self.velocity, _ = solution.y
-
-    @cached_property
-    def displacement(self) -> float:
-        """delta* over x Re_x^-1/2."""
-        return float(self.eta[-1] - self.stream[-1])
-
-    def temperature(self, pr: float) -> Floats:
-        """Temperature over wall temperature, stream 1; at `eta`."""
-        rest = self._conduction(pr, decay=False, flux=False)
-        return 1.0 - rest
-
-    def excess(self, pr: float) -> Floats:
-        """Temperature over stream temperature above a wall of unit slope -1 in eta; at `eta`."""
-        return self._conduction(pr, decay=True, flux=True)
-
-    def heat_constant(self, pr: float, flux: bool) -> float:
-        """Constant c of Nu_x = c Re_x^1/2 on one plate."""
-        if flux:
-            return float(1.0 / self.excess(pr)[0])
-        a, b = self.eta[1:3]
-        low, high = self.temperature(pr)[1:3]
-        return float((low * b / a - high * a / b) / (b - a))
-
-    def _conduction(self, pr: float, decay: bool, flux: bool) -> Floats:
-        """Solve t'' + Pr/2 (f t' - f' t) = 0 (last term if `decay`), zero far out."""
-        before, after = np.diff(self.eta)[:-1], np.diff(self.eta)[1:]
-        span = before + after
-        drift = 0.5 * pr * self.stream[1:-1]
-        bands = np.zeros((3, self.eta.size))
-        bands[0, 2:] = 2.0 / (after * span) + drift * before / (after * span)
-        bands[2, :-2] = 2.0 / (before * span) - drift * after / (before * span)
-        bands[1, 1:-1] = -2.0 / (before * after) + drift * (after - before) / (before * after)
-        if decay:
-            bands[1, 1:-1] -= 0.5 * pr * self.velocity[1:-1]
-        bands[1, [0, -1]] = 1.0
-        known = np.zeros(self.eta.size)
-        known[0] = 1.0
-        if flux:  # t''(0) = 0: the wall cell's slope is the wall's own to second order
-            bands[0, 1] = -1.0
-            known[0] = self.eta[1]
-        return np.asarray(solve_banded((1, 1), bands, known))
-
-
 def march(
     pr: Floats,
     *,
@@ -194,8 +138,9 @@ def march(
     """March from x+ = `start` (similarity solution) to `end` in steps growing by e^`step`.
 
     `pr` (k,) from 0.5 upward; `end` defaults to x* = 0.3 of the highest Pr, at least x+ = 1. Fully
-    implicit, second order along and across the flow; needs Pr^1/3 sqrt(start) above 1e-4 or so
-    for the first temperatures to be resolved, what is not is forgotten within two decades.
+    implicit, second order along and across the flow. The velocity layer is 2e-3 of the half gap
+    thick at 1e-8, the first of 500 cells 1.3e-5: temperature layers start in three cells at Pr 1e5
+    and more at lower Pr, and what the start misses is forgotten along the way.
     Raises ArithmeticError if Newton's method does not converge.
     """
     pr = np.atleast_1d(np.asarray(pr, dtype=np.float64))
@@ -234,7 +179,7 @@ def _inlet(grid: _Grid, similarity: Similarity, pr: Floats, x: float) -> _State:
     root = np.sqrt(x)
     core = 1.0 / (1.0 - similarity.displacement * root)
     scale = root / np.sqrt(core)
-    far = np.maximum(grid.faces / scale - _FAR, 0.0)
+    far = np.maximum(grid.faces / scale - FAR, 0.0)
     stream = core * scale * (np.interp(grid.faces / scale, similarity.eta, similarity.stream) + far)
     stream /= stream[-1]
     eta = grid.centre / scale
@@ -261,12 +206,8 @@ def _advance(
     across = -(slope.now * stream + slope.history(last.stream, before.stream))
     cold, warm = last.cold.copy(), last.warm.copy()
     if active.any():
-        old = np.stack(
-            [state.velocity * np.stack([state.cold, state.warm]) for state in (last, before)]
-        )
-        cold[active], warm[active] = _energy(
-            grid, pr[active], slope, velocity, across, slope.history(*old[:, :, active])
-        )
+        old = slope.history(last.carried(active), before.carried(active))
+        cold[active], warm[active] = _energy(grid, pr[active], slope, velocity, across, old)
     return _State(x, velocity, stream, pressure, gradient, cold, warm)
 
 
@@ -298,7 +239,7 @@ def _momentum(
 def _momentum_bands(
     grid: _Grid, now: float, velocity: Floats, across: Floats
 ) -> tuple[Floats, Floats]:
-    """Newton's matrix, five bands for (velocity, stream) cell by cell, and momentum flux at faces."""
+    """Newton's matrix, five bands for (velocity, stream) by cell, and momentum flux at faces."""
     inner, at_faces = across[1:-1], grid.at_faces(velocity)
     below = inner * grid.lower + grid.conduct  # d flux / d velocity below the face
     above = inner * (1.0 - grid.lower) - grid.conduct
@@ -398,4 +339,4 @@ def _mean(x: Floats, local: Floats, power: float) -> Floats:
     along = x.reshape(-1, *[1] * (local.ndim - 1))
     spline = CubicSpline(np.log(x), local * along)
     summed = np.asarray(spline.antiderivative()(np.log(x)))
-    return (summed + local[0] * x[0] / (1.0 + power)) / along
+    return np.asarray((summed + local[0] * x[0] / (1.0 + power)) / along)
