@@ -179,7 +179,7 @@ def _ticks_by_step(axis: Any) -> None:
 
     plain = ScalarFormatter(useOffset=False)
     plain.set_powerlimits((-4, 6))
-    axis.set_major_locator(MaxNLocator(nbins=5, steps=[1, 2, 2.5, 5, 10]))
+    axis.set_major_locator(MaxNLocator(nbins=6, steps=[1, 2, 2.5, 5, 10]))
     axis.set_major_formatter(plain)
 
 

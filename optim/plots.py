@@ -196,7 +196,7 @@ def _scatter(
             c=[colour] if tint is None else tint[rows],
             marker=marker,
             edgecolors=ink.INK,
-            linewidths=0.4,
+            linewidths=0.4 * min(1.0, (_MANY / len(front)) ** 0.5),
             label=group,
             zorder=3,
         )

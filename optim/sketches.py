@@ -65,7 +65,8 @@ def sketch_picture(front: Front, problem: Problem, figure: Figure | None = None)
             ax = ink.panel(figure, 124.0, lift, _DETAIL_MM, _DETAIL_HIGH_MM)
             _detail(ax, row.sketch)
             upper = bottom - _BELOW_MM
-        _foot(figure, widest, scale)
+        wired = any(shape.part == "wire" for row in rows for shape in row.sketch.shapes)
+        _foot(figure, widest, scale, wired)
         return figure
 
 
@@ -140,7 +141,7 @@ def _whole(ax: Axes, row: _Row, wide: float, tall: float, mm: float) -> None:
     base = min(plates, key=lambda corners: float(corners[:, 1].min()))
     levels = np.arange(max(round(sketch.repeats), 1)) * sketch.pitch
     stacked = base[None, :, :] + np.stack([np.zeros_like(levels), levels], axis=1)[:, None, :]
-    _fill(ax, stacked, "plate", 0.3)
+    _fill(ax, stacked, "plate", 0.3 if not sketch.pitch or sketch.pitch > 0.6 * mm else 0.0)
     middle = 0.5 * (float(stacked[..., 1].min()) + float(stacked[..., 1].max()))
     ax.set_xlim(0.0, wide)
     ax.set_ylim(middle - 0.5 * tall, middle + 0.5 * tall)
@@ -209,7 +210,7 @@ def _rounded(size: float) -> float:
     return float((_ROUND[size >= 0.999 * _ROUND * power] * power).max())
 
 
-def _foot(figure: Figure, widest: float, scale: float) -> None:
+def _foot(figure: Figure, widest: float, scale: float, wired: bool) -> None:
     """Scale bar of the whole views and the meaning of the marks."""
     ax = ink.panel(figure, _LEFT_MM, 2.0, ink.WIDTH_MM - _LEFT_MM - 4.0, 7.0)
     ax.set_axis_off()
@@ -217,6 +218,7 @@ def _foot(figure: Figure, widest: float, scale: float) -> None:
     size = _rounded(0.3 * widest)
     ax.plot([0.0, size * scale], [4.0, 4.0], color=ink.INK, lw=2.0, solid_capstyle="butt")
     ax.text(size * scale + 2.0, 4.0, f"{format_value(size, 'm')}, all alike", va="center")
-    ax.plot([74.0], [4.0], marker="v", ms=5.0, color=_FILL["wire"], mec=ink.INK, mew=0.5)
-    ax.text(76.5, 4.0, "place of the wire", va="center")
+    if wired:
+        ax.plot([74.0], [4.0], marker="v", ms=5.0, color=_FILL["wire"], mec=ink.INK, mew=0.5)
+        ax.text(76.5, 4.0, "place of the wire", va="center")
     ax.text(110.0, 4.0, "enlarged, own bar each", va="center")
