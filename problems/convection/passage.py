@@ -79,9 +79,11 @@ def developed_nusselt(re_d: Floats, pr: Floats, relative_roughness: Floats) -> F
 def local_entrance(diameters: Floats) -> Floats:
     """Local over developed Nusselt number [-] at a distance of so many hydraulic diameters.
 
-    The derivative of Gnielinski's mean factor 1 + (D_h/L)^(2/3): 1 + (D_h/x)^(2/3) / 3.
+    The derivative of Gnielinski's mean factor 1 + (D_h/L)^(2/3) is 1 + (D_h/x)^(2/3) / 3; one
+    diameter is added to x (our choice) so that a layer which a wire has thickened at the very
+    inlet gets a finite gain.
     """
-    return 1.0 + np.cbrt(diameters) ** -2 / 3.0
+    return 1.0 + np.cbrt(diameters + 1.0) ** -2 / 3.0
 
 
 def merged(re_theta: Floats, re_d: Floats) -> Floats:

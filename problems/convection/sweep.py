@@ -169,11 +169,11 @@ def sweep(surface: Surface) -> Sweep:
         turbulent_here = transition.intermittency((wire.re_x - onset.re_x) / onset.length)
     step = np.zeros_like(surface.re_l) if wire is None else wire.thickening(turbulent_here)
     re_theta = _re_theta_at(surface, onset, wire, step * (1.0 - turbulent_here), ahead)
-    momentum = _laminar_momentum(surface)
+    gamma_end = np.zeros_like(surface.re_l)
     index = np.flatnonzero(ahead < surface.re_l)
     if index.size:
-        momentum[index], re_theta[index] = _behind_onset(
-            surface, onset, sustains, re_theta, index, totals, momentum[index]
+        gamma_end[index], re_theta[index] = _behind_onset(
+            surface, onset, sustains, re_theta, index, totals
         )
     speed_up = 1.0 if wire is None else wire.speed_up
     return Sweep(
@@ -183,7 +183,7 @@ def sweep(surface: Surface) -> Sweep:
         outlet_stanton=totals.last,
         wall_high=totals.wall_high,
         wire_friction=2.0 * step * speed_up / surface.re_l,
-        momentum_factor=momentum,
+        momentum_factor=_momentum(surface, gamma_end, re_theta),
         turbulent_share=totals.turbulent / surface.re_l,
         onset=onset,
         sustains=sustains,
@@ -282,10 +282,18 @@ def _re_theta_at(
     return np.sqrt(grown + flat_plate.BLASIUS**2 * (re_x - place))
 
 
-def _laminar_momentum(surface: Surface) -> Floats:
-    if surface.re_d is None:
+def _momentum(surface: Surface, gamma: Floats, re_theta: Floats) -> Floats:
+    """Momentum factor at the outlet, laminar and turbulent mixed by its intermittency."""
+    re_d = surface.re_d
+    if re_d is None:
         return np.ones_like(surface.re_l)
-    return entrance.momentum_factor(np.sqrt(surface.re_l) / surface.re_d)
+    momentum = entrance.momentum_factor(np.sqrt(surface.re_l) / re_d)
+    index = np.flatnonzero(gamma > 0.0)
+    some, thickness = re_d[index], re_theta[index]
+    fanning = passage.developed_friction(some, np.zeros_like(some))
+    full = passage.turbulent_momentum_factor(thickness, some, fanning)
+    momentum[index] += gamma[index] * (full - momentum[index])
+    return momentum
 
 
 def _behind_onset(
@@ -295,40 +303,69 @@ def _behind_onset(
     re_theta: Floats,
     index: NDArray[np.intp],
     totals: _Totals,
-    laminar_momentum: Floats,
 ) -> tuple[Floats, Floats]:
-    """Add the transitional and the turbulent stretch; outlet momentum factor and Re_theta."""
+    """Add the transitional and the turbulent stretch; outlet intermittency and Re_theta."""
     columns = surface.part(index)
-    laminar = laminar_layer(columns)
     re_t, length = onset.re_x[index, None], onset.length[index, None]
     weight = sustains[index, None]
-    start = re_theta[index, None]
-    xi_end = np.minimum((columns.re_l - re_t) / length, _XI_END)
     fractions, weights, collect = _gauss(_IN_TRANSITION)
-    gamma = transition.intermittency(xi_end * fractions)
-    re_x = re_t + length * xi_end * fractions
+    xi_end = np.minimum((columns.re_l - re_t) / length, _XI_END)
+    gamma = transition.intermittency(xi_end * _and_outlet(fractions, 1.0))
     run = length * xi_end
-    thickness, end = _grow(re_x, gamma, start, run, collect, weights)
-    cf, stanton = mixed(columns, laminar, re_x, thickness, gamma * weight)
-    totals.add(index, columns, (re_x, run * weights, cf, stanton, gamma * weight))
-    # from here on turbulent: stations spread evenly in ln Re_theta
-    re_e = re_t + run
-    last = flat_plate.turbulent_growth(end, columns.re_l - re_e)
+    re_x = re_t + run * _and_outlet(fractions, 1.0)
+    inside = slice(0, fractions.size)
+    thickness, end = _grow(
+        re_x[:, inside], gamma[:, inside], re_theta[index, None], run, collect, weights
+    )
+    thickness = np.hstack([thickness, end])
+    gamma *= weight
+    cf, stanton = mixed(columns, laminar_layer(columns), re_x, thickness, gamma)
+    totals.add(index, columns, (re_x, run * _and_outlet(weights, 0.0), cf, stanton, gamma))
+    gamma_end, re_e = gamma[:, -1].copy(), re_x[:, -1]
+    grown = xi_end[:, 0] >= _XI_END
+    for chosen in (grown & (weight[:, 0] == 1.0), grown & (weight[:, 0] < 1.0)):
+        rows = np.flatnonzero(chosen)
+        if rows.size:
+            end[rows] = _turbulent_stretch(
+                surface, sustains, index[rows], re_e[rows], end[rows], totals
+            )
+            gamma_end[rows] = weight[rows, 0]
+    return gamma_end, end[:, 0]
+
+
+def _turbulent_stretch(
+    surface: Surface,
+    sustains: Floats,
+    index: NDArray[np.intp],
+    start: Floats,
+    re_theta: Floats,
+    totals: _Totals,
+) -> Floats:
+    """Add the stretch from `start` to the end, stations spread evenly in ln Re_theta.
+
+    The designs either all keep up their turbulence in full, or none does: only where they do not
+    has the laminar flow a share in it. Returns Re_theta at the end, (k, 1).
+    """
+    columns = surface.part(index)
+    start, weight = start[:, None], sustains[index, None]
+    last = flat_plate.turbulent_growth(re_theta, columns.re_l - start)
     fractions, weights, _ = _gauss(_IN_TURBULENCE)
-    spread = np.log(last / end)
-    thickness = end * np.exp(spread * np.append(fractions, 1.0))
-    weights = np.append(weights, 0.0)  # the outlet itself, for the extremes
-    re_x = re_e + flat_plate.turbulent_run(thickness) - flat_plate.turbulent_run(end)
+    spread = np.log(last / re_theta)
+    thickness = re_theta * np.exp(spread * _and_outlet(fractions, 1.0))
+    re_x = start + flat_plate.turbulent_run(thickness) - flat_plate.turbulent_run(re_theta)
     run = 2.0 / flat_plate.turbulent_friction(thickness) * thickness * spread
-    gamma = np.broadcast_to(transition.intermittency(xi_end) * weight, re_x.shape)
-    cf, stanton = mixed(columns, laminar, re_x, thickness, gamma)
-    totals.add(index, columns, (re_x, run * weights, cf, stanton, gamma))
-    momentum = laminar_momentum
-    if columns.re_d is not None:
-        fanning = passage.developed_friction(columns.re_d, np.zeros_like(columns.re_d))
-        full = passage.turbulent_momentum_factor(last, columns.re_d, fanning)[:, 0]
-        momentum = momentum + gamma[:, -1] * (full - momentum)
-    return momentum, last[:, 0]
+    if weight[0, 0] == 1.0:
+        cf, stanton = turbulent(columns, re_x, thickness)
+    else:
+        cf, stanton = mixed(columns, laminar_layer(columns), re_x, thickness, weight)
+    gamma = np.broadcast_to(weight, re_x.shape)
+    totals.add(index, columns, (re_x, run * _and_outlet(weights, 0.0), cf, stanton, gamma))
+    return last
+
+
+def _and_outlet(values: Floats, outlet: float) -> Floats:
+    """Values at the Gauss points and at the end of the stretch."""
+    return np.append(values, outlet)
 
 
 def _grow(
