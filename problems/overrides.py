@@ -28,11 +28,16 @@ def overridden(
     known = [*(path for path in paths if not path.startswith(("aims", "limits"))), *_LISTS]
     result, wrong = copy.deepcopy(dict(raw)), []
     places = {name: _path(name, known) for name in overrides}
+    said: dict[str, str] = {}
     for name, value in overrides.items():
         path, problem = places[name]
         if path is None:
             wrong.append(line(name, value, problem))
             continue
+        if path in said:
+            wrong.append(line(name, value, f"the same as {said[path]}, already set: give one"))
+            continue
+        said[path] = name
         other = _OTHERS.get(path)
         if other and other not in [place for place, _ in places.values()]:
             _drop(result, other.split("."))

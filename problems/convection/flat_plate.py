@@ -43,7 +43,7 @@ def laminar_heat_constant(pr: Floats, flux: bool) -> Floats:
     miss by 1.1 % in gases: within 0.03 % for Pr 0.5 to 1e4.
     """
     lead, spread, power = (0.463686, 0.0414537, 0.957806) if flux else (0.338734, 0.082067, 0.93591)
-    return lead * np.cbrt(pr) / (1.0 + spread * pr**-power) ** 0.25
+    return np.asarray(lead * np.cbrt(pr) / (1.0 + spread * pr**-power) ** 0.25)
 
 
 def turbulent_friction(re_theta: Floats) -> Floats:
@@ -52,7 +52,7 @@ def turbulent_friction(re_theta: Floats) -> Floats:
     1/cf = 17.08 (log10 Re_theta)^2 + 25.11 log10 Re_theta + 6.012.
     """
     log = np.log(re_theta)
-    return 1.0 / ((_KS2 * log + _KS1) * log + _KS0)
+    return np.asarray(1.0 / ((_KS2 * log + _KS1) * log + _KS0))
 
 
 def turbulent_run(re_theta: Floats) -> Floats:

@@ -159,17 +159,18 @@ class Onset:
     forced: Floats
 
 
-def onset(natural: Floats, turbulence: Floats, wire: Wire | None) -> Onset:
+def onset(natural: Floats, turbulence: float, wire: Wire | None) -> Onset:
     """Onset of transition from the natural one, the turbulence level [%] and a wire.
 
     A wire that trips and holds sets the onset where it stands. One too small moves it upstream,
     at most to itself: its equivalent turbulence is added to the stream's, root-sum-square (our
-    assumption). A wire behind the natural onset changes nothing; its credit fades over the last tenth before it.
+    assumption). A wire behind the natural onset changes nothing; its credit fades over the last
+    tenth before it.
     """
     if wire is None:
         return Onset(natural, natural, length_scale(natural), np.zeros_like(natural))
     noisy = np.hypot(turbulence, wire.added_turbulence())
-    early = natural * onset_re_x(noisy) / onset_re_x(turbulence)
+    early = natural * onset_re_x(noisy) / onset_re_x(np.array([turbulence]))
     moved = np.minimum(natural, _soft_most(early, wire.re_x))
     ahead = 1.0 - smooth_step(wire.re_x / natural, 0.9, 1.0)
     forced = wire.trips() * wire.holds() * ahead

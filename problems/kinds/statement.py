@@ -6,7 +6,8 @@ Joins variables, physics, ranges of validity, cautions and words. The balances t
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
+from typing import TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -14,11 +15,14 @@ from numpy.typing import NDArray
 from problems import CaseError
 from problems.case import Case
 from problems.convection import fluids
+from problems.convection.flat_plate import smooth_step
 from problems.convection.fluids import Fluid, FluidError
 from problems.kinds import cautions, laws, pictures, plate, stack, words
 from problems.kinds.outcomes import OUTCOMES, SETTINGS
 from problems.kinds.swept import CHUNK, Walked, settings, variables
 from problems.problem import Evaluation, Floats, Problem, Profile, Sketch
+
+_Scalar = TypeVar("_Scalar", bound=np.generic)
 
 _TOUCHING = 0.8  # share of the gap that wires on both walls may take
 _REACH = 300.0  # K from the inlet that a wall under a flux may reach
@@ -146,12 +150,19 @@ def _common(
         "heat_per_power": np.abs(outcomes["heat"]) / np.maximum(outcomes["fan_power"], 1e-12),
         "film_temperature": walked.film,
         "plate_mass": one_side * given["thickness"] * case.plates.material_density,
-        "onset": np.minimum(sweep.onset.re_x / walked.surface.re_l, 1.0) * given["length"],
+        "onset": _onset(walked) * given["length"],
         "turbulent_share": sweep.turbulent_share,
         "length_reynolds": walked.surface.re_l,
         "wire_reynolds": wired,
         "wire_margin": wired / 900.0,
     }
+
+
+def _onset(walked: Walked) -> Floats:
+    """Where transition begins, as a share of the length; 1 where the plate stays laminar."""
+    share = np.minimum(walked.sweep.onset.re_x / walked.surface.re_l, 1.0)
+    kept = smooth_step(walked.sweep.sustains, 0.0, 0.1)
+    return 1.0 + kept * (share - 1.0)
 
 
 def _impossible(fluid: Fluid, batch: Batch) -> tuple[Floats, NDArray[np.str_]]:
@@ -198,14 +209,17 @@ def _fluid(case: Case) -> Fluid:
 def joined(parts: list[Evaluation]) -> Evaluation:
     """Evaluations of consecutive designs as one."""
     first = parts[0]
+    return Evaluation(
+        settings={key: _end_to_end([p.settings[key] for p in parts]) for key in first.settings},
+        outcomes={key: _end_to_end([p.outcomes[key] for p in parts]) for key in first.outcomes},
+        possible=_end_to_end([p.possible for p in parts]),
+        impossible_by=_end_to_end([p.impossible_by for p in parts]),
+        reasons=_end_to_end([p.reasons for p in parts]),
+        group=_end_to_end([p.group for p in parts]),
+        outside={key: _end_to_end([p.outside[key] for p in parts]) for key in first.outside},
+        cautions={key: _end_to_end([p.cautions[key] for p in parts]) for key in first.cautions},
+    )
 
-    def mapping(name: str) -> dict[str, NDArray]:
-        keys = getattr(first, name)
-        return {key: np.concatenate([getattr(part, name)[key] for part in parts]) for key in keys}
 
-    arrays = {
-        name: np.concatenate([getattr(part, name) for part in parts])
-        for name in ("possible", "impossible_by", "reasons", "group")
-    }
-    mappings = {name: mapping(name) for name in ("settings", "outcomes", "outside", "cautions")}
-    return replace(first, **arrays, **mappings)
+def _end_to_end(arrays: list[NDArray[_Scalar]]) -> NDArray[_Scalar]:
+    return np.concatenate(arrays)

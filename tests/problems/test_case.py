@@ -373,3 +373,8 @@ def test_ranges_that_no_design_will_want_are_cautioned():
     texts = parse_case(good("plate"), "plate", fixed).cautions
     assert [text[:23] for text in texts] == ["Nothing is left to sear", "A wire at up to 200 mm "]
     assert parse_case(good("plate"), "plate").cautions == ()
+
+
+def test_one_key_set_under_two_names_is_a_fault():
+    with pytest.raises(CaseError, match="the same as length"):
+        load_case("hulling-stack", {"length": "0.3 m", "plates.length": "0.4 m"})
