@@ -62,7 +62,7 @@ def turbulent_run(re_theta: Floats) -> Floats:
     """
     log = np.log(re_theta)
     square = _KS2 * ((log - 2.0) * log + 2.0)
-    return 2.0 * re_theta * (square + _KS1 * (log - 1.0) + _KS0)
+    return np.asarray(2.0 * re_theta * (square + _KS1 * (log - 1.0) + _KS0))
 
 
 def turbulent_growth(re_theta: Floats, distance: Floats) -> Floats:

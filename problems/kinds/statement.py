@@ -161,8 +161,7 @@ def _common(
 def _onset(walked: Walked) -> Floats:
     """Where transition begins, as a share of the length; 1 where the plate stays laminar."""
     share = np.minimum(walked.sweep.onset.re_x / walked.surface.re_l, 1.0)
-    kept = smooth_step(walked.sweep.sustains, 0.0, 0.1)
-    return 1.0 + kept * (share - 1.0)
+    return np.asarray(share ** smooth_step(walked.sweep.sustains, 0.0, 0.5))
 
 
 def _impossible(fluid: Fluid, batch: Batch) -> tuple[Floats, NDArray[np.str_]]:
