@@ -12,7 +12,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from problems.convection import flat_plate, transition
-from problems.convection.sweep import Surface, Sweep, laminar_layer, laminar_thickness, mixed
+from problems.convection.sweep import (
+    Surface,
+    Sweep,
+    laminar_layer,
+    laminar_thickness,
+    mixed,
+    wire_steps,
+)
 
 Floats = NDArray[np.float64]
 
@@ -60,30 +67,32 @@ def _stations(end: float, onset: float, length: float, count: int) -> Floats:
 
 
 def _march(surface: Surface, sweep: Sweep, re_x: Floats, layer: Floats, onset: float) -> Floats:
-    """Re_theta by the trapezoidal rule along the stations, the wire a step."""
-    wire, re_d = sweep.wire, surface.re_d
-    wire_x, step = np.inf, 0.0
-    if wire is not None:
-        wire_x = float(wire.re_x[0])
-        standing_in = transition.intermittency((wire.re_x - onset) / sweep.onset.length)
-        step = float((wire.thickening(standing_in) * (1.0 - standing_in))[0])
-    out = laminar_thickness(re_x, re_d)
-    first = int(np.searchsorted(re_x, min(wire_x, onset)))
-    if first == re_x.size:
-        return out
-    edge = np.array([min(wire_x, onset)])
-    theta = float(laminar_thickness(edge, re_d)[0]) + (step if wire_x <= onset else 0.0)
-    here = float(edge[0])
-    for station in range(first, re_x.size):
-        run = float(re_x[station]) - here
-        gamma = float(layer[station])
-        if gamma == 0.0:  # still laminar: the momentum integral in closed form
-            theta = float(np.hypot(theta, flat_plate.BLASIUS * np.sqrt(run)))
-        else:
-            theta = _one_step(theta, here, run, gamma)
-        here = float(re_x[station])
+    """Re_theta by the trapezoidal rule along the stations, every wire a step."""
+    steps = [
+        (min(float(wire.re_x[0]), onset), float(carried[0]))
+        for wire, (_, carried) in wire_steps(sweep.wires, sweep.onset)
+        if float(wire.re_x[0]) < float(surface.re_l[0])
+    ]
+    out = laminar_thickness(re_x, surface.re_d)
+    here = min([onset, *(place for place, _ in steps)])
+    theta = float(laminar_thickness(np.array([here]), surface.re_d)[0])
+    for station in range(int(np.searchsorted(re_x, here)), re_x.size):
+        there = float(re_x[station])
+        while steps and steps[0][0] <= there:
+            place, carried = steps.pop(0)
+            theta = _grown(theta, here, place - here, 0.0) + carried
+            here = place
+        theta = _grown(theta, here, there - here, float(layer[station]))
+        here = there
         out[station] = theta
     return out
+
+
+def _grown(theta: float, here: float, run: float, gamma: float) -> float:
+    """Re_theta a `run` further on; while laminar the momentum integral in closed form."""
+    if gamma == 0.0:
+        return float(np.hypot(theta, flat_plate.BLASIUS * np.sqrt(max(run, 0.0))))
+    return _one_step(theta, here, run, gamma)
 
 
 def _one_step(theta: float, here: float, run: float, gamma: float) -> float:

@@ -124,6 +124,13 @@ def profile_mean_square(eta: Floats) -> Floats:
     return eta**2 / (eta**2 + (top + 27.2079046) / base)
 
 
+def profile_velocity(eta: Floats) -> Floats:
+    """u/U [-] of the laminar profile at y = eta sqrt(nu x / U); fitted to Blasius within 0.008."""
+    slope = 0.5 * BLASIUS * eta
+    cube = np.minimum(slope, 4.0) ** 3
+    return np.tanh(slope * (1.0 + 0.41617852 * cube / (1.0 + 0.56579575 * cube)))
+
+
 def turbulent_mean_square(share: Floats) -> Floats:
     """Mean of (u/U)^2 [-] of the one-seventh power profile up to `share` of its thickness."""
     inside = 7.0 / 9.0 * np.minimum(share, 1.0) ** (2.0 / 7.0)

@@ -30,8 +30,9 @@ class Surface:
 
     `re_l` on the length; `re_d` on hydraulic diameter, None for a plate in a free stream; `pr`;
     `re_rough` U k_s/nu, None if smooth; `natural` the onset Re_x without a wire; `turbulence` in
-    percent; `wire_x`, `wire_k` U x/nu and U k/nu of a wire, None without; `flux` for uniform wall
-    flux instead of uniform wall temperature.
+    percent; `wire_x`, `wire_k` U x/nu and U k/nu of a wire, None without; `wires` of them stand
+    in a row `wire_spacing` apart, `facing` of them (0 to 2) in one section of the gap; `grit`
+    makes them strips of grit; `flux` is for uniform wall flux instead of wall temperature.
     """
 
     re_l: Floats
@@ -42,6 +43,10 @@ class Surface:
     re_rough: Floats | None = None
     wire_x: Floats | None = None
     wire_k: Floats | None = None
+    wire_spacing: Floats | None = None
+    wires: int = 1
+    facing: int = 2
+    grit: bool = False
     drag_coefficient: float = 1.0
     flux: bool = False
 
@@ -55,6 +60,7 @@ class Surface:
             re_rough=None if self.re_rough is None else self.re_rough[index, None],
             wire_x=None,
             wire_k=None,
+            wire_spacing=None,
         )
 
 
@@ -66,7 +72,8 @@ class Sweep:
     `least_stanton` the worst spot, `outlet_stanton` the last; `wall_high` is the highest value
     along the plate of (T_wall - T_inlet) rho cp u / q for uniform flux; `wire_friction` is the
     wire's drag in the same terms as `friction`; `momentum_factor` is the outlet's;
-    `turbulent_share` is of the length.
+    `turbulent_share` is of the length; `evenness` is least over mean local flux, for uniform flux
+    mean over highest excess of the wall temperature over the inlet's.
     """
 
     friction: Floats
@@ -79,8 +86,20 @@ class Sweep:
     turbulent_share: Floats
     onset: Onset
     sustains: Floats
-    wire: Wire | None
+    wires: tuple[Wire, ...]
     re_theta_end: Floats
+    evenness: Floats
+
+    @property
+    def wire(self) -> Wire | None:
+        """The first wire that the flow meets."""
+        return self.wires[0] if self.wires else None
+
+    @property
+    def behind_wires(self) -> Floats:
+        """Re_theta behind the last wire, were the layer laminar up to it."""
+        last = self.wires[-1]
+        return last.re_theta + last.thickening(np.zeros_like(last.re_theta))
 
 
 class Laminar(Protocol):
@@ -159,36 +178,65 @@ def sweep(surface: Surface) -> Sweep:
         sustains = passage.sustains(surface.re_d)
         # merged layers in a passage that sustains turbulence do not stay laminar
         natural = 1.0 / (1.0 / natural + 1.0 / (_MERGED_LAMINAR * surface.re_d**2))
-    wire = _wire(surface)
-    onset = transition.onset(natural, surface.turbulence, wire)
+    wires = _wires(surface)
+    onset = transition.onset(natural, surface.turbulence, wires)
     lasting = sustains == 0.0  # a layer that cannot become turbulent is laminar to the end
     ahead = np.where(lasting, surface.re_l, np.minimum(onset.re_x, surface.re_l))
     totals = _Totals(surface, laminar, ahead)
-    turbulent_here = np.zeros_like(surface.re_l)
-    if wire is not None:
-        turbulent_here = transition.intermittency((wire.re_x - onset.re_x) / onset.length)
-    step = np.zeros_like(surface.re_l) if wire is None else wire.thickening(turbulent_here)
-    re_theta = _re_theta_at(surface, onset, wire, step * (1.0 - turbulent_here), ahead)
+    steps = wire_steps(wires, onset)
+    re_theta = laminar_growth(surface, wires, steps, ahead)
     gamma_end = np.zeros_like(surface.re_l)
     index = np.flatnonzero(ahead < surface.re_l)
     if index.size:
         gamma_end[index], re_theta[index] = _behind_onset(
             surface, onset, sustains, re_theta, index, totals
         )
-    speed_up = 1.0 if wire is None else wire.speed_up
+    wire_drag = sum((2.0 * full * wire.speed_up for wire, (full, _) in steps), 0.0 * ahead)
     return Sweep(
         friction=totals.friction / surface.re_l,
         stanton=surface.re_l / totals.heat if surface.flux else totals.heat / surface.re_l,
         least_stanton=totals.least,
         outlet_stanton=totals.last,
         wall_high=totals.wall_high,
-        wire_friction=2.0 * step * speed_up / surface.re_l,
+        wire_friction=wire_drag / surface.re_l,
         momentum_factor=_momentum(surface, gamma_end, re_theta),
         turbulent_share=totals.turbulent / surface.re_l,
         onset=onset,
         sustains=sustains,
-        wire=wire,
+        wires=wires,
         re_theta_end=re_theta,
+        evenness=totals.evenness(),
+    )
+
+
+def wire_steps(wires: tuple[Wire, ...], onset: Onset) -> list[tuple[Wire, tuple[Floats, Floats]]]:
+    """For each wire its step in Re_theta, and the part of it that a laminar layer carries on."""
+    found = []
+    for wire in wires:
+        inside = transition.intermittency((wire.re_x - onset.re_x) / onset.length)
+        step = wire.thickening(inside)
+        found.append((wire, (step, step * (1.0 - inside))))
+    return found
+
+
+def one_wall_wired(wired: Sweep, plain: Sweep, flux: bool) -> Sweep:
+    """A gap with wires on one of its walls: each wall by its own walk, joined by their means."""
+    if flux:
+        stanton = 2.0 / (1.0 / wired.stanton + 1.0 / plain.stanton)
+    else:
+        stanton = 0.5 * (wired.stanton + plain.stanton)
+    worst = np.minimum(wired.evenness * wired.stanton, plain.evenness * plain.stanton)
+    return replace(
+        wired,
+        friction=0.5 * (wired.friction + plain.friction),
+        stanton=stanton,
+        least_stanton=np.minimum(wired.least_stanton, plain.least_stanton),
+        outlet_stanton=0.5 * (wired.outlet_stanton + plain.outlet_stanton),
+        wall_high=np.maximum(wired.wall_high, plain.wall_high),
+        wire_friction=0.5 * wired.wire_friction,
+        momentum_factor=0.5 * (wired.momentum_factor + plain.momentum_factor),
+        turbulent_share=0.5 * (wired.turbulent_share + plain.turbulent_share),
+        evenness=worst / stanton,
     )
 
 
@@ -205,6 +253,7 @@ class _Totals:
         self.wall_high = np.zeros_like(ahead)
         if surface.flux:
             self.wall_high = self._wall(surface, ahead, self.least)
+        self.least_flux = self.least * self._left(surface, self.heat)
 
     @staticmethod
     def _wall(surface: Surface, re_x: Floats, stanton: Floats) -> Floats:
@@ -212,17 +261,46 @@ class _Totals:
         excess = 1.0 / stanton
         return excess if surface.re_d is None else excess + 4.0 * re_x / surface.re_d
 
+    @staticmethod
+    def _left(surface: Surface, heat: Floats) -> Floats:
+        """Share left of the temperature difference between wall and stream, uniform wall."""
+        if surface.re_d is None or surface.flux:
+            return np.ones_like(heat)
+        return np.exp(-4.0 * heat / surface.re_d)
+
+    def evenness(self) -> Floats:
+        """Least over mean flux; for uniform flux mean over highest excess of the wall."""
+        surface = self._surface
+        if surface.flux:
+            stream = 0.0 if surface.re_d is None else 2.0 * surface.re_l / surface.re_d
+            return (self.heat / surface.re_l + stream) / self.wall_high
+        if surface.re_d is None:
+            return self.least_flux * surface.re_l / self.heat
+        taken = 0.25 * surface.re_d * -np.expm1(-4.0 * self.heat / surface.re_d)
+        return self.least_flux * surface.re_l / taken
+
     def add(
         self,
         index: NDArray[np.intp],
         columns: Surface,
         stations: tuple[Floats, Floats, Floats, Floats, Floats],
     ) -> None:
-        """Add a stretch: stations (k, m) of Re_x, weight, cf, St and intermittency."""
-        re_x, weight, cf, stanton, gamma = stations
+        """Add a stretch: stations (k, m) of Re_x, run, cf, St and intermittency.
+
+        `run` (k, m) is the length of the stretch as seen from each station; the stations are the
+        Gauss points and the end.
+        """
+        re_x, run, cf, stanton, gamma = stations
+        nodes, weights, collect = _gauss(re_x.shape[1] - 1)
+        weight = run * np.append(weights, 0.0)
         self.friction[index] += np.sum(weight * cf, axis=1)
         heat = 1.0 / stanton if columns.flux else stanton
+        before = self.heat[index, None]
+        inside = before + (run * heat)[:, : nodes.size] @ collect.T
         self.heat[index] += np.sum(weight * heat, axis=1)
+        so_far = np.hstack([inside, self.heat[index, None]])
+        flux = (stanton * self._left(columns, so_far)).min(axis=1)
+        self.least_flux[index] = np.minimum(self.least_flux[index], flux)
         self.turbulent[index] += np.sum(weight * gamma, axis=1)
         self.least[index] = np.minimum(self.least[index], stanton.min(axis=1))
         self.last[index] = stanton[:, -1]
@@ -249,37 +327,60 @@ def laminar_thickness(re_x: Floats, re_d: Floats | None) -> Floats:
     return plate / (1.0 + (plate / (0.05 * re_d)) ** 4) ** 0.25
 
 
-def _wire(surface: Surface) -> Wire | None:
-    """The wire with what it meets at its place."""
+def _wires(surface: Surface) -> tuple[Wire, ...]:
+    """The wires in the order in which the flow meets them, each with what it meets."""
     if surface.wire_x is None or surface.wire_k is None:
-        return None
-    re_x = np.maximum(surface.wire_x, 1e-6 * surface.re_l)
-    re_d = surface.re_d
+        return ()
+    found: list[Wire] = []
+    for number in range(surface.wires):
+        spacing = 0.0 if surface.wire_spacing is None else surface.wire_spacing
+        found.append(_wire(surface, surface.wire_x + number * spacing, found))
+    return tuple(found)
+
+
+def _wire(surface: Surface, place: Floats, ahead: list[Wire]) -> Wire:
+    """The wire at `place` (in Re_x), behind those `ahead`, whose steps the layer carries on."""
+    re_x = np.maximum(place, 1e-6 * surface.re_l)
+    re_d, wire_k = surface.re_d, np.asarray(surface.wire_k)
     speed_up, blockage = np.ones_like(re_x), np.zeros_like(re_x)
     if re_d is not None:
         speed_up = entrance.core_velocity(np.sqrt(re_x) / re_d)
-        blockage = 4.0 * surface.wire_k / re_d  # wires on both walls of the gap
+        blockage = 2.0 * surface.facing * wire_k / re_d
+    calm = np.zeros_like(re_x)
+    steps = [(wire, (calm, wire.thickening(calm))) for wire in ahead]
     behind_end = flat_plate.smooth_step(re_x / surface.re_l, 1.0, 1.1)
     return Wire(
         re_x=re_x,
-        re_height=surface.wire_k,
+        re_height=wire_k,
         speed_up=speed_up,
-        re_theta=laminar_thickness(re_x, re_d),
+        re_theta=laminar_growth(surface, tuple(ahead), steps, re_x),
         blockage=blockage,
         on_plate=1.0 - behind_end,
         drag_coefficient=surface.drag_coefficient,
+        grit=surface.grit,
     )
 
 
-def _re_theta_at(
-    surface: Surface, onset: Onset, wire: Wire | None, step: Floats, re_x: Floats
+def laminar_growth(
+    surface: Surface,
+    wires: tuple[Wire, ...],
+    steps: list[tuple[Wire, tuple[Floats, Floats]]],
+    re_x: Floats,
 ) -> Floats:
-    """Re_theta of the laminar layer where it ends, with the wire's step carried along."""
-    if wire is None:
+    """Re_theta of the laminar layer at `re_x`, with the steps of the wires carried along.
+
+    Between wires the momentum integral of a laminar layer: Re_theta^2 grows by 0.441 Re_x.
+    """
+    if not wires:
         return laminar_thickness(re_x, surface.re_d)
-    place = np.minimum(wire.re_x, re_x)
-    grown = (laminar_thickness(place, surface.re_d) + step) ** 2
-    return np.sqrt(grown + flat_plate.BLASIUS**2 * (re_x - place))
+    place = np.minimum(wires[0].re_x, re_x)
+    re_theta = laminar_thickness(place, surface.re_d)
+    for number, (_, (_, carried)) in enumerate(steps):
+        re_theta = re_theta + carried
+        after = re_x if number + 1 == len(wires) else np.minimum(wires[number + 1].re_x, re_x)
+        re_theta = np.sqrt(re_theta**2 + flat_plate.BLASIUS**2 * np.maximum(after - place, 0.0))
+        place = np.maximum(after, place)
+    return re_theta
 
 
 def _momentum(surface: Surface, gamma: Floats, re_theta: Floats) -> Floats:
@@ -320,7 +421,8 @@ def _behind_onset(
     thickness = np.hstack([thickness, end])
     gamma *= weight
     cf, stanton = mixed(columns, laminar_layer(columns), re_x, thickness, gamma)
-    totals.add(index, columns, (re_x, run * _and_outlet(weights, 0.0), cf, stanton, gamma))
+    run_here = np.broadcast_to(run, re_x.shape)
+    totals.add(index, columns, (re_x, run_here, cf, stanton, gamma))
     gamma_end, re_e = gamma[:, -1].copy(), re_x[:, -1]
     grown = xi_end[:, 0] >= _XI_END
     for chosen in (grown & (weight[:, 0] == 1.0), grown & (weight[:, 0] < 1.0)):
@@ -349,7 +451,7 @@ def _turbulent_stretch(
     columns = surface.part(index)
     start, weight = start[:, None], sustains[index, None]
     last = flat_plate.turbulent_growth(re_theta, columns.re_l - start)
-    fractions, weights, _ = _gauss(_IN_TURBULENCE)
+    fractions, _, _ = _gauss(_IN_TURBULENCE)
     spread = np.log(last / re_theta)
     thickness = re_theta * np.exp(spread * _and_outlet(fractions, 1.0))
     re_x = start + flat_plate.turbulent_run(thickness) - flat_plate.turbulent_run(re_theta)
@@ -359,7 +461,7 @@ def _turbulent_stretch(
     else:
         cf, stanton = mixed(columns, laminar_layer(columns), re_x, thickness, weight)
     gamma = np.broadcast_to(weight, re_x.shape)
-    totals.add(index, columns, (re_x, run * _and_outlet(weights, 0.0), cf, stanton, gamma))
+    totals.add(index, columns, (re_x, run, cf, stanton, gamma))
     return last
 
 

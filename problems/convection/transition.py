@@ -6,6 +6,7 @@ the layer. What the layer then does to friction and heat is the business of `swe
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -16,6 +17,7 @@ from problems.convection.flat_plate import (
     SHAPE_LAMINAR,
     THETA_OVER_DELTA,
     profile_mean_square,
+    profile_velocity,
     smooth_step,
     turbulent_mean_square,
 )
@@ -24,6 +26,11 @@ Floats = NDArray[np.float64]
 
 QUIET_LIMIT = 2.8e6  # onset Re_x in a quiet stream, Schubauer and Skramstad 1948 (from memory)
 WIRE_LOW, WIRE_DESIGN = 826.0, 900.0  # Gibbings 1959; Kraemer 1961 (both from memory)
+GRIT_LOW, GRIT_DESIGN = (
+    500.0,
+    600.0,
+)  # Re_k of three-dimensional grit, Braslow and Knox 1958 (memory)
+GRIT_COVER = 0.3  # frontal share of a sparse strip of grit, over a wire as tall (our assumption)
 _WIRE_NONE = 740.0  # where the smooth weight begins; as wide below 826 as it is above
 HOLDS, FAILS = 320.0, 200.0  # Re_theta behind the wire, Preston 1958 (from memory)
 FORCED_LENGTH = 2e4  # Re from an effective wire to full turbulence, Kraemer 1961 (from memory)
@@ -85,7 +92,8 @@ class Wire:
     outside the layer there over the nominal one, `re_theta` the laminar layer's there,
     `blockage` the wires' share of the gap (0 on a single plate), `drag_coefficient` on the mean
     square of the undisturbed profile over the wire's height, `on_plate` 1 on the plate, fading to
-    0 over a tenth of its length behind its end.
+    0 over a tenth of its length behind its end. With `grit` it is a strip of three-dimensional
+    roughness of that height instead: another criterion, and less drag for the same height.
     """
 
     re_x: Floats
@@ -95,11 +103,17 @@ class Wire:
     blockage: Floats
     on_plate: Floats
     drag_coefficient: float
+    grit: bool = False
 
     @property
     def reynolds(self) -> Floats:
         """Wire Reynolds number U k/nu [-] with the velocity outside the layer."""
         return self.re_height * self.speed_up
+
+    @property
+    def top_reynolds(self) -> Floats:
+        """Re_k [-]: height and the undisturbed laminar velocity at that height."""
+        return self.reynolds * profile_velocity(BLASIUS * self.height_over_theta)
 
     @property
     def height_over_theta(self) -> Floats:
@@ -127,11 +141,17 @@ class Wire:
             theta = 0.036 * self.re_x**0.8
             full = turbulent_mean_square(self.reynolds / theta * THETA_OVER_DELTA)
             mean_square = mean_square + turbulent * (full - mean_square)
-        step = 0.5 * self.drag_coefficient * self.reynolds * mean_square
+        cover = GRIT_COVER if self.grit else 1.0
+        step = 0.5 * self.drag_coefficient * cover * self.reynolds * mean_square
         return step * self.squeeze * self.on_plate
 
     def trips(self) -> Floats:
-        """Smooth weight of the criterion U k/nu: a little over half at 826, 1 from 900."""
+        """Smooth weight of the criterion U k/nu: a little over half at 826, 1 from 900.
+
+        Grit: of the criterion Re_k, 0 at 500 and 1 from 600.
+        """
+        if self.grit:
+            return smooth_step(self.top_reynolds, GRIT_LOW, GRIT_DESIGN) * self.on_plate
         return smooth_step(self.reynolds, _WIRE_NONE, WIRE_DESIGN) * self.on_plate
 
     def holds(self) -> Floats:
@@ -140,7 +160,12 @@ class Wire:
         return smooth_step(behind, FAILS, HOLDS)
 
     def added_turbulence(self) -> Floats:
-        """Turbulence [%] that a wire too small to trip acts like; Dryden 1958, 4.4 (k/delta*)^3."""
+        """Turbulence [%] that a wire too small to trip acts like; Dryden 1958, 4.4 (k/delta*)^3.
+
+        Grit too small to trip does next to nothing.
+        """
+        if self.grit:
+            return np.zeros_like(self.re_x)
         ratio = np.minimum(self.height_over_displacement, 5.0)
         return 4.4 * ratio**3 * smooth_step(ratio, 0.1, 0.3) * self.on_plate
 
@@ -149,8 +174,8 @@ class Wire:
 class Onset:
     """Where transition begins and how long it takes, in Re_x; shape (n,).
 
-    `natural` without the wire, `re_x` with it; `length` is the scale of the intermittency;
-    `forced` the weight (0 to 1) with which the wire itself sets the onset.
+    `natural` without wires, `re_x` with them; `length` is the scale of the intermittency;
+    `forced` the weight (0 to 1) with which a wire itself sets the onset.
     """
 
     natural: Floats
@@ -159,23 +184,24 @@ class Onset:
     forced: Floats
 
 
-def onset(natural: Floats, turbulence: float, wire: Wire | None) -> Onset:
-    """Onset of transition from the natural one, the turbulence level [%] and a wire.
+def onset(natural: Floats, turbulence: float, wires: Sequence[Wire]) -> Onset:
+    """Onset of transition from the natural one, the turbulence level [%] and wires in a row.
 
     A wire that trips and holds sets the onset where it stands. One too small moves it upstream,
     at most to itself: its equivalent turbulence is added to the stream's, root-sum-square (our
-    assumption). A wire behind the natural onset changes nothing; its credit fades over the last
-    tenth before it.
+    assumption). A wire behind the onset changes nothing; its credit fades over the last tenth
+    before it. Wires are taken in the order in which the flow meets them.
     """
-    if wire is None:
-        return Onset(natural, natural, length_scale(natural), np.zeros_like(natural))
-    noisy = np.hypot(turbulence, wire.added_turbulence())
-    early = natural * onset_re_x(noisy) / onset_re_x(np.array([turbulence]))
-    moved = np.minimum(natural, _soft_most(early, wire.re_x))
-    ahead = 1.0 - smooth_step(wire.re_x / natural, 0.9, 1.0)
-    forced = wire.trips() * wire.holds() * ahead
-    place = np.minimum(wire.re_x, natural)
-    re_x = moved * (place / moved) ** forced
+    re_x, forced = natural, np.zeros_like(natural)
+    for wire in wires:
+        noisy = np.hypot(turbulence, wire.added_turbulence())
+        early = natural * onset_re_x(noisy) / onset_re_x(np.array([turbulence]))
+        moved = np.minimum(re_x, _soft_most(early, wire.re_x))
+        ahead = 1.0 - smooth_step(wire.re_x / re_x, 0.9, 1.0)
+        sets = wire.trips() * wire.holds() * ahead
+        place = np.minimum(wire.re_x, re_x)
+        re_x = moved * (place / moved) ** sets
+        forced = 1.0 - (1.0 - forced) * (1.0 - sets)
     length = length_scale(re_x)
     length = length * (FORCED_LENGTH / COMPLETE / length) ** forced
     return Onset(natural, re_x, length, forced)

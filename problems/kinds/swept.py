@@ -155,15 +155,17 @@ def walk(
 
 
 def _updated(whole: Any, index: NDArray[np.intp], part: Any) -> Any:
-    """`whole` with the designs at `index` taken from `part`, through all nested dataclasses."""
-    changes = {}
-    for item in fields(whole):
-        old, new = getattr(whole, item.name), getattr(part, item.name)
-        if is_dataclass(old):
-            changes[item.name] = _updated(old, index, new)
-        elif isinstance(old, np.ndarray):
-            changes[item.name] = old.copy()
-            changes[item.name][index] = new
+    """`whole` with the designs at `index` taken from `part`, through nested dataclasses."""
+    if isinstance(whole, np.ndarray):
+        merged = whole.copy()
+        merged[index] = part
+        return merged
+    if isinstance(whole, tuple):
+        return tuple(_updated(old, index, new) for old, new in zip(whole, part, strict=True))
+    if not is_dataclass(whole):
+        return whole
+    names = [item.name for item in fields(whole)]
+    changes = {name: _updated(getattr(whole, name), index, getattr(part, name)) for name in names}
     return replace(whole, **changes)
 
 

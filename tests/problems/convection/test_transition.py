@@ -72,7 +72,7 @@ def test_wire_diameter_that_trips_in_air_is_the_computed_one():
 
 def test_wire_that_trips_and_holds_sets_the_onset_where_it_stands():
     wire = _wire(5e4, 1000.0)
-    onset = transition.onset(np.array([1.35e6]), 0.5, wire)
+    onset = transition.onset(np.array([1.35e6]), 0.5, [wire])
     assert_allclose(onset.re_x, 5e4, rtol=1e-6)
     # full turbulence 2e4 behind the wire (Kraemer 1961, from memory)
     assert_allclose(onset.length * transition.COMPLETE, 2e4)
@@ -80,7 +80,7 @@ def test_wire_that_trips_and_holds_sets_the_onset_where_it_stands():
 
 def test_wire_too_small_to_trip_moves_onset_upstream_but_not_past_itself():
     re_k = np.linspace(1.0, 600.0, 50)
-    onset = transition.onset(np.full(50, 1.35e6), 0.5, _wire(np.full(50, 1e5), re_k))
+    onset = transition.onset(np.full(50, 1.35e6), 0.5, [_wire(np.full(50, 1e5), re_k)])
     assert_allclose(onset.re_x[0], 1.35e6, rtol=1e-9)
     assert np.all(np.diff(onset.re_x) <= 0.0)
     assert np.all(onset.re_x >= 1e5)
@@ -88,7 +88,7 @@ def test_wire_too_small_to_trip_moves_onset_upstream_but_not_past_itself():
 
 
 def test_wire_behind_natural_onset_changes_nothing():
-    onset = transition.onset(np.array([1e5]), 3.0, _wire(2e5, 1500.0))
+    onset = transition.onset(np.array([1e5]), 3.0, [_wire(2e5, 1500.0)])
     assert_allclose(onset.re_x, 1e5)
     assert_allclose(onset.length, transition.length_scale(np.array([1e5])))
 
@@ -96,7 +96,7 @@ def test_wire_behind_natural_onset_changes_nothing():
 def test_wire_on_a_layer_too_thin_to_hold_gets_no_credit():
     wire = _wire(100.0, 300.0)
     assert wire.re_theta + wire.thickening(np.zeros(1)) < 200.0
-    onset = transition.onset(np.array([1.35e6]), 0.5, wire)
+    onset = transition.onset(np.array([1.35e6]), 0.5, [wire])
     assert onset.forced == 0.0
 
 
