@@ -34,7 +34,7 @@ def normalised(aims: Floats) -> Floats:
     """`aims` (n, m) stretched so that each column runs from 0 to 1 (0 where it does not run)."""
     low = aims.min(axis=0)
     span = aims.max(axis=0) - low
-    return (aims - low) / np.where(span > 0.0, span, 1.0)
+    return np.asarray((aims - low) / np.where(span > 0.0, span, 1.0))
 
 
 def extremes(aims: Floats) -> Indices:
@@ -53,15 +53,15 @@ def thin_evenly(aims: Floats, size: int, first: Indices | None = None) -> Indice
     """
     if len(aims) <= size:
         return np.arange(len(aims))
-    places = normalised(aims)
-    taken = list(extremes(aims) if first is None else first)[:size]
+    columns = np.ascontiguousarray(normalised(aims).T)
+    start = list(extremes(aims) if first is None else first)[:size]
+    taken: list[int] = []
     gap = np.full(len(aims), np.inf)
-    for row in taken:
-        gap = np.minimum(gap, ((places - places[row]) ** 2).sum(axis=1))
     while len(taken) < size and gap.max() > 0.0:
-        row = int(np.argmax(gap))
+        row = int(start.pop(0) if start else np.argmax(gap))
         taken.append(row)
-        gap = np.minimum(gap, ((places - places[row]) ** 2).sum(axis=1))
+        apart = columns - columns[:, row, None]
+        np.minimum(gap, np.einsum("ij,ij->j", apart, apart), out=gap)
     return np.sort(np.array(taken, dtype=np.intp))
 
 

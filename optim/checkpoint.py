@@ -17,7 +17,7 @@ import numpy as np
 
 from optim.errors import CheckpointError
 from optim.files import written_whole
-from optim.steps import State
+from optim.steps import Mark, State
 from problems.problem import Problem
 
 _FORMAT = "platewright checkpoint 1"
@@ -29,6 +29,7 @@ _ARRAYS = (
     "kept_aims",
     "scales",
 )
+_MARKED = ("generation", "evaluations", "size", "violation")
 
 
 def fingerprint(problem: Problem) -> str:
@@ -46,13 +47,12 @@ def write(path: str | os.PathLike[str], problem: Problem, seed: int, state: Stat
         "seed": seed,
         "generation": state.generation,
         "evaluations": state.evaluations,
-        "counts": state.counts,
-        "sizes": state.sizes,
-        "lengths": [len(front) for front in state.trail],
+        "trail": [{name: getattr(mark, name) for name in _MARKED} for mark in state.trail],
+        "lengths": [len(mark.front) for mark in state.trail],
         "rng": state.rng,
     }
     arrays: dict[str, Any] = {name: getattr(state, name) for name in _ARRAYS}
-    arrays["trail"] = np.concatenate(state.trail)
+    arrays["fronts"] = np.concatenate([mark.front for mark in state.trail])
     with written_whole(Path(path), "wb") as stream:
         np.savez(stream, header=np.array(json.dumps(header)), **arrays)
 
@@ -70,14 +70,14 @@ def read(path: str | os.PathLike[str], problem: Problem, seed: int) -> State:
         )
     if header["seed"] != seed:
         raise CheckpointError(f"{path}: this checkpoint has seed {header['seed']}, not {seed}")
-    trail = np.split(arrays["trail"], np.cumsum(header["lengths"])[:-1])
+    fronts = np.split(arrays["fronts"], np.cumsum(header["lengths"])[:-1])
     return State(
         generation=header["generation"],
         evaluations=header["evaluations"],
         **{name: arrays[name] for name in _ARRAYS},
-        trail=tuple(trail),
-        counts=tuple(header["counts"]),
-        sizes=tuple(header["sizes"]),
+        trail=tuple(
+            Mark(**mark, front=front) for mark, front in zip(header["trail"], fronts, strict=True)
+        ),
         rng=header["rng"],
     )
 
@@ -99,7 +99,7 @@ def _opened(path: Path) -> tuple[dict[str, Any], dict[str, Any]]:
         with np.load(path, allow_pickle=False) as held:
             arrays = {name: held[name] for name in held.files}
         header = json.loads(str(arrays.pop("header")))
-        known = header["format"] == _FORMAT and all(name in arrays for name in _ARRAYS)
+        known = header["format"] == _FORMAT and arrays.keys() == {*_ARRAYS, "fronts"}
     except (OSError, ValueError, KeyError, TypeError, EOFError, zipfile.BadZipFile) as fault:
         raise CheckpointError(f"{path}: not a checkpoint, or a damaged one ({fault})") from fault
     if not known:

@@ -10,6 +10,7 @@ import os
 import time
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from typing import Any
 
 import numpy as np
 
@@ -21,12 +22,12 @@ from optim.misses import nearest_miss
 from optim.polish import polished
 from optim.provenance import provenance
 from optim.search import Progress
-from optim.steps import Plan, State, advance, begin
+from optim.steps import MEASURED_IN_PART, Plan, State, advance, begin
 from optim.stopping import Patience, hypervolume, settled
 from optim.task import Task, task_of
-from problems.problem import Floats, Problem
+from problems.problem import Evaluation, Floats, Problem
 
-_CHECKPOINT_EVERY = 2.0  # s
+CHECKPOINT_EVERY = 2.0  # s
 _MOST_AIMS = 5
 INTERRUPTED = "interrupted; what was found until then was kept"
 
@@ -44,9 +45,10 @@ def run(
     """What `optim.search.search` promises."""
     _check(problem, seed, evaluations, size)
     started = time.perf_counter()
+    task = task_of(problem)
     loop = _Loop(
-        task_of(problem),
-        Plan().within(evaluations),
+        task,
+        Plan().within(evaluations, task.free),
         seed,
         evaluations,
         on_progress,
@@ -82,7 +84,7 @@ class _Loop:
             self._tell(state)
             while (reason := self._finished(task, state)) is None:
                 state = advance(task, self.plan, state, self.evaluations)
-                if time.perf_counter() - written > _CHECKPOINT_EVERY:
+                if time.perf_counter() - written > CHECKPOINT_EVERY:
                     self._write(state)
                     written = time.perf_counter()
                 self._tell(state)
@@ -130,7 +132,7 @@ class _Loop:
 
 
 def _figure(task: Task, state: State) -> float | None:
-    front = state.trail[-1]
+    front = state.trail[-1].front
     if not len(front):
         return None
     if front.shape[1] == 1:
@@ -145,11 +147,32 @@ def _front(task: Task, state: State, reason: str, seed: int, size: int) -> Front
     else:
         units, aims, extra = state.kept_units, state.kept_aims, 0
         rows = thin_evenly(aims, size)
+    thinned = _thinned(aims, rows)
     rows = rows[_reading_order(task, aims[rows])]
-    designs = task.designs(units[rows])
-    given = task.problem.evaluate(designs)
+    designs, given = _evaluated_again(task, units[rows])
     facts = provenance(task, state, reason, seed, state.evaluations + extra, given)
+    facts["thinned"] = thinned
     return Front(tabulated(task.problem, designs, given), facts, task.problem.source)
+
+
+def _thinned(aims: Floats, rows: Indices) -> dict[str, Any]:
+    """From how many designs the front was thinned, and the share of their hypervolume it keeps."""
+    told: dict[str, Any] = {"from": len(aims), "to": len(rows)}
+    if 1 < aims.shape[1] < MEASURED_IN_PART:
+        low, high = aims.min(axis=0), aims.max(axis=0)
+        whole = hypervolume(aims, low, high)
+        told["hypervolume_kept"] = hypervolume(aims[rows], low, high) / whole
+    return told
+
+
+def _evaluated_again(task: Task, units: Floats) -> tuple[Floats, Evaluation]:
+    """Designs in full; any that a last digit has carried over a limit are left out."""
+    chosen = task.designs(units)
+    given = task.problem.evaluate(chosen)
+    sound = task.judge(given).violation <= 0.0
+    if sound.all() or not sound.any():
+        return chosen, given
+    return chosen[sound], task.problem.evaluate(chosen[sound])
 
 
 def _nothing(task: Task, state: State, reason: str, seed: int) -> Front:

@@ -99,8 +99,8 @@ def tabulated(problem: Problem, designs: Floats, given: Evaluation) -> pd.DataFr
 
 def units(problem: Problem) -> dict[str, str]:
     """The unit of every column of figures in the table."""
-    named = (*problem.settings, *problem.variables, *problem.outcomes)
-    return {quantity.column: quantity.unit for quantity in named}
+    found = {variable.column: variable.unit for variable in problem.variables}
+    return found | {named.column: named.unit for named in (*problem.settings, *problem.outcomes)}
 
 
 def _texts(entries: list[str]) -> pd.Series:
@@ -116,6 +116,8 @@ def _joined(marks: Mapping[str, Bools], rows: int) -> list[str]:
 
 
 def _read_table(path: Path) -> pd.DataFrame:
-    names = pd.read_csv(path, nrows=0).columns
-    kinds = {name: "str" if name in TEXTS else "float64" for name in names}
-    return pd.read_csv(path, dtype=kinds, keep_default_na=False, float_precision="round_trip")
+    """Read as text and turned into numbers afterwards, which gives every figure back exactly."""
+    table = pd.read_csv(path, dtype="str", keep_default_na=False)
+    figures = [name for name in table.columns if name not in TEXTS]
+    exact = {name: table[name].to_numpy(dtype=object).astype(np.float64) for name in figures}
+    return table.assign(**exact)

@@ -56,7 +56,7 @@ def nearest_miss(task: Task, state: State, seed: int) -> Miss:
 def _alone(task: Task, bound: Bound, seed: int) -> State:
     """A search for the most or least of one limited outcome, all limits left out."""
     free = replace(task, aims=((bound.outcome, bound.sign),), bounds=(), scales=np.empty(0))
-    free, state = begin(free, replace(_PLAN, first=_PLAN.first if task.free else 1), seed)
+    free, state = begin(free, _PLAN.within(4 * _PLAN.first, task.free), seed)
     for _ in range(_GENERATIONS if task.free else 0):
         state = advance(free, _PLAN, state, state.evaluations + _PLAN.first)
     return state

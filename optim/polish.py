@@ -41,12 +41,8 @@ def polished(task: Task, state: State) -> tuple[Floats, Floats, int]:
 
 
 def _by_bound(task: Task) -> Task:
-    sizes = np.array([abs(bound.bound) or scale for bound, scale in _scaled(task)])
-    return replace(task, scales=sizes)
-
-
-def _scaled(task: Task) -> list[tuple[object, float]]:
-    return list(zip(task.bounds, task.scales.tolist(), strict=True))
+    sizes = np.array([abs(bound.bound) for bound in task.bounds])
+    return replace(task, scales=np.where(sizes > 0.0, sizes, task.scales))
 
 
 def _starts(units: Floats, aims: Floats) -> Indices:
@@ -90,7 +86,7 @@ class _Slopes:
 
     def aim_slope(self, place: Floats) -> Floats:
         scores, apart = self.around(place)
-        return self._slope(scores.aims, apart)[0] / self.size
+        return np.asarray(self._slope(scores.aims, apart)[0] / self.size)
 
     def room(self, place: Floats) -> Floats:
         scores, _ = self.around(place)
@@ -106,17 +102,17 @@ class _Slopes:
 
 
 def _climbed(slopes: _Slopes, start: Floats) -> Floats:
-    from scipy.optimize import minimize
+    from scipy.optimize import Bounds, NonlinearConstraint, minimize
 
-    room = {"type": "ineq", "fun": slopes.room, "jac": slopes.room_slope}
+    room = NonlinearConstraint(slopes.room, 0.0, np.inf, jac=slopes.room_slope)
     end = minimize(
         slopes.aim,
         start,
         jac=slopes.aim_slope,
         method="SLSQP",
-        bounds=[(0.0, 1.0)] * len(start),
+        bounds=Bounds(0.0, 1.0),
         constraints=[room] if slopes.task.bounds else [],
         options={"maxiter": _ROUNDS, "ftol": 1e-13},
     )
-    sound = np.isfinite(end.x).all()
-    return np.clip(end.x, 0.0, 1.0) if sound else start
+    place = np.asarray(end.x, dtype=float)
+    return np.clip(place, 0.0, 1.0) if np.isfinite(place).all() else start

@@ -62,20 +62,19 @@ def versions() -> dict[str, str]:
 def history(task: Task, state: State) -> list[dict[str, Any]]:
     """After each generation: evaluations, front size, and hypervolume in the last front's box.
 
-    With one aim `best` is the best value so far, and the hypervolume runs from 0 at the first
-    feasible design to 1 at the last.
+    In long searches early generations are told of with gaps.
+    With one aim `best` is the best value so far.
     """
-    volumes = measured(state.trail)
     rows = []
-    for place, (front, volume) in enumerate(zip(state.trail, volumes, strict=True)):
-        row = {
-            "generation": place + 1,
-            "evaluations": state.counts[place],
-            "front_size": state.sizes[place],
+    for mark, volume in zip(state.trail, measured(state.trail), strict=True):
+        row: dict[str, Any] = {
+            "generation": mark.generation,
+            "evaluations": mark.evaluations,
+            "front_size": mark.size,
             "hypervolume": volume,
         }
         if len(task.aims) == 1:
-            row["best"] = float(front.min()) * task.aims[0][1] if len(front) else None
+            row["best"] = float(mark.front.min()) * task.aims[0][1] if mark.size else None
         rows.append(row)
     return rows
 

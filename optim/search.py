@@ -15,7 +15,7 @@ if TYPE_CHECKING:
     from optim.front import Front
     from problems.problem import Problem
 
-EVALUATIONS = 60_000
+EVALUATIONS = 100_000
 FRONT_SIZE = 300
 
 

@@ -26,7 +26,9 @@ from optim.variation import (
 from problems.problem import Floats
 
 TOLERANCE = 0.01  # with one aim: how far from the best a neighbour may be, of the best value
-_SNAPSHOT = 300  # rows of the front remembered with four aims and more
+MEASURED_IN_PART = 4  # aims from which only `_SNAPSHOT` designs of a front are remembered
+_SNAPSHOT = 300
+_TRAIL, _TRAIL_LATEST = 240, 80  # generations remembered, and of them the latest without gaps
 
 
 @dataclass(frozen=True)
@@ -34,16 +36,30 @@ class Plan:
     """How many designs of which sort a generation tries, and how many are kept."""
 
     first: int = 1000
-    population: int = 200
-    children: int = 200
-    lines: int = 600
-    near: int = 200
-    keep: int = 4000
+    population: int = 400
+    children: int = 700
+    lines: int = 200
+    near: int = 100
+    keep: int = 6000
 
-    def within(self, evaluations: int) -> Plan:
-        """The plan cut down to a small number of evaluations."""
-        first = max(1, min(self.first, evaluations // 4))
-        return replace(self, first=first)
+    def within(self, evaluations: int, free: int) -> Plan:
+        """The plan cut down to a small number of evaluations or to nothing that can move."""
+        return replace(self, first=max(1, min(self.first, evaluations // 4)) if free else 1)
+
+
+@dataclass(frozen=True)
+class Mark:
+    """What is remembered of a generation.
+
+    `size` is the number of designs in the archive, `front` (n, m) their aims or, with four aims
+    and more, those of an even part; with one aim only the best. `violation` is the least so far.
+    """
+
+    generation: int
+    evaluations: int
+    size: int
+    violation: float
+    front: Floats = field(repr=False)
 
 
 @dataclass(frozen=True)
@@ -51,7 +67,7 @@ class State:
     """A search at the end of a generation.
 
     `ranked_*` is the population, best first; `kept_*` the archive of designs that break nothing;
-    `trail` the aims of the archive as they stood after each generation.
+    `trail` the generations remembered: the latest all, of older ones fewer as they grow many.
     """
 
     generation: int
@@ -62,9 +78,7 @@ class State:
     kept_units: Floats
     kept_aims: Floats
     scales: Floats
-    trail: tuple[Floats, ...]
-    counts: tuple[int, ...]  # evaluations after each generation
-    sizes: tuple[int, ...]  # designs in the archive after each generation
+    trail: tuple[Mark, ...]
     rng: Mapping[str, Any] = field(repr=False)
 
 
@@ -76,7 +90,7 @@ def begin(task: Task, plan: Plan, seed: int) -> tuple[Task, State]:
     excess = raw_excess(task.bounds, given)
     task = replace(task, scales=sensible_scales(excess, given.possible, task.bounds))
     none = np.empty((0, task.free)), np.empty((0, len(task.aims)))
-    empty = State(0, 0, *none, np.empty(0), *none, task.scales, (), (), (), {})
+    empty = State(0, 0, *none, np.empty(0), *none, task.scales, (), {})
     return task, _taken_in(empty, plan, units, task.judge(given), rng)
 
 
@@ -101,25 +115,29 @@ def _proposed(plan: Plan, state: State, rng: Generator) -> Floats:
 
 
 def _taken_in(state: State, plan: Plan, units: Floats, scores: Scores, rng: Generator) -> State:
-    evaluations = state.evaluations + len(units)
     kept_units, kept_aims = _kept(state, plan, units, scores)
     every = np.concatenate([state.ranked_units, units])
     aims = np.concatenate([state.ranked_aims, scores.aims])
     violation = np.concatenate([state.ranked_violation, scores.violation])
     single = _first_of_each(every)
     best = single[survivors(aims[single], violation[single], plan.population)]
-    return State(
+    mark = Mark(
         state.generation + 1,
-        evaluations,
+        state.evaluations + len(units),
+        len(kept_aims),
+        float(violation[best].min()),
+        _snapshot(kept_aims),
+    )
+    return State(
+        mark.generation,
+        mark.evaluations,
         every[best],
         aims[best],
         violation[best],
         kept_units,
         kept_aims,
         state.scales,
-        (*state.trail, _snapshot(kept_aims)),
-        (*state.counts, evaluations),
-        (*state.sizes, len(kept_aims)),
+        _remembered((*state.trail, mark)),
         rng.bit_generator.state,
     )
 
@@ -149,12 +167,20 @@ def _thinned(spread: Floats, aims: Floats, keep: int) -> Indices:
     return np.union1d(rows, [np.argmin(aims[:, 0])]).astype(np.intp)
 
 
+def _remembered(trail: tuple[Mark, ...]) -> tuple[Mark, ...]:
+    if len(trail) <= _TRAIL:
+        return trail
+    old, new = trail[:-_TRAIL_LATEST], trail[-_TRAIL_LATEST:]
+    return (*old[::2], *new)
+
+
 def _snapshot(aims: Floats) -> Floats:
     if not len(aims):
         return aims
     if aims.shape[1] == 1:
         return np.asarray(aims.min(axis=0, keepdims=True))
-    return aims if aims.shape[1] < 4 else aims[thin_evenly(aims, _SNAPSHOT)]
+    in_part = aims.shape[1] >= MEASURED_IN_PART
+    return aims[thin_evenly(aims, _SNAPSHOT)] if in_part else aims
 
 
 def _first_of_each(units: Floats) -> Indices:

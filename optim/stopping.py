@@ -10,7 +10,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from optim.steps import State
+from optim.steps import MEASURED_IN_PART, Mark, State
+from optim.task import IMPOSSIBLE
 from problems.problem import Floats
 
 _BEYOND = 0.1  # the reference lies this share of the front's extent beyond its worst corner
@@ -18,12 +19,19 @@ _BEYOND = 0.1  # the reference lies this share of the front's extent beyond its 
 
 @dataclass(frozen=True)
 class Patience:
-    """Settled: growth below `growth` over the last `generations`."""
+    """Settled: growth below `growth` over the last `generations`.
 
-    generations: int = 15
-    growth: float = 2e-4
+    With four aims and more, where only part of the front is measured, `part_growth` between the
+    means of the last `generations` and of as many before, looked at every `part_every`.
+    """
+
+    generations: int = 20
+    growth: float = 1e-4
+    part_growth: float = 5e-4
+    part_every: int = 5
     one_aim_growth: float = 1e-7
-    violation: float = 1e-3
+    miss_generations: int = 30
+    nearer: float = 1e-3
 
 
 def hypervolume(aims: Floats, low: Floats, high: Floats) -> float:
@@ -44,34 +52,64 @@ def hypervolume(aims: Floats, low: Floats, high: Floats) -> float:
     return float(volume / reference.prod())
 
 
-def measured(trail: tuple[Floats, ...]) -> list[float]:
+def measured(trail: tuple[Mark, ...]) -> list[float]:
     """Hypervolume of each remembered front in the box of the last one."""
-    if not len(trail[-1]):
+    fronts = [mark.front for mark in trail]
+    last = fronts[-1]
+    if not len(last):
         return [0.0] * len(trail)
-    last = trail[-1]
-    low, high = last.min(axis=0), last.max(axis=0)
-    if last.shape[1] == 1:
-        first = next(front for front in trail if len(front))
-        high = first.max(axis=0)
-    return [hypervolume(front, low, high) for front in trail]
+    low, high = _box(last, next(front for front in fronts if len(front)))
+    return [hypervolume(front, low, high) for front in fronts]
+
+
+def _box(now: Floats, then: Floats) -> tuple[Floats, Floats]:
+    """Corners of the front `now`; where it is but a point, as far as the earlier one `then`."""
+    low, high = now.min(axis=0), now.max(axis=0)
+    return low, np.where(high > low, high, np.maximum(high, then.max(axis=0)))
 
 
 def settled(state: State, patience: Patience) -> str | None:
     """Why the search may stop, in plain words; None while it still gains."""
     span = patience.generations
-    if len(state.trail) <= span or not len(state.trail[-1 - span]):
+    if not state.trail[-1].size:
+        return _stalled(state, patience)
+    if len(state.trail) <= span or not state.trail[-1 - span].size:
         return None
-    now, then = state.trail[-1], state.trail[-1 - span]
+    now, then = state.trail[-1].front, state.trail[-1 - span].front
     if now.shape[1] == 1:
         gain, least = float((then - now)[0, 0]), patience.one_aim_growth
         if gain > least * abs(float(now[0, 0])):
             return None
         return f"the best value had not moved by more than {least:g} of itself {_over(span)}"
-    low, high = now.min(axis=0), now.max(axis=0)
+    if now.shape[1] >= MEASURED_IN_PART:
+        return _settled_in_part(state, patience)
+    low, high = _box(now, then)
     grown = 1.0 - hypervolume(then, low, high) / hypervolume(now, low, high)
     if grown > patience.growth:
         return None
     return f"the hypervolume had grown by less than {patience.growth:.2%} {_over(span)}"
+
+
+def _settled_in_part(state: State, patience: Patience) -> str | None:
+    span = patience.generations
+    if len(state.trail) < 2 * span or state.generation % patience.part_every:
+        return None
+    volumes = np.array(measured(state.trail[-2 * span :]))
+    grown = 1.0 - volumes[:span].mean() / volumes[span:].mean()
+    if grown > patience.part_growth:
+        return None
+    return f"the hypervolume had grown by less than {patience.part_growth:.2%} {_over(span)}"
+
+
+def _stalled(state: State, patience: Patience) -> str | None:
+    span = patience.miss_generations
+    if len(state.trail) <= span:
+        return None
+    now, then = state.trail[-1].violation, state.trail[-1 - span].violation
+    base = IMPOSSIBLE if now >= IMPOSSIBLE else 0.0
+    if now - base < (then - base) * (1.0 - patience.nearer):
+        return None
+    return f"nothing feasible was found, and the search came no nearer to it {_over(span)}"
 
 
 def _over(span: int) -> str:
