@@ -7,6 +7,7 @@ key follows which rule is for `schema`; units are for `units`.
 from __future__ import annotations
 
 import difflib
+import itertools
 import math
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
@@ -154,6 +155,26 @@ class Place(Rule):
         is_share = all(isinstance(end, str) and end.strip().endswith("%") for end in ends)
         span = (self.share if is_share else self.distance).read(value)
         return Position(span.low, span.high, is_share)
+
+
+@dataclass(frozen=True)
+class Series(Rule):
+    """A list of quantities, each larger than the one before."""
+
+    number: Number
+    example: str
+
+    @property
+    def allowed(self) -> str:
+        return f"a list of rising values such as {self.example}"
+
+    def read(self, value: object) -> tuple[float, ...]:
+        if not isinstance(value, list | tuple) or not value:
+            raise QuantityError(value)
+        sizes = tuple(self.number.read(size) for size in value)
+        if any(high <= low for low, high in itertools.pairwise(sizes)):
+            raise QuantityError(value)
+        return sizes
 
 
 @dataclass(frozen=True)

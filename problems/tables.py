@@ -11,7 +11,18 @@ from typing import Annotated, Literal, TypeVar
 
 from pydantic import BaseModel, ConfigDict, Field, ValidationInfo, field_validator
 
-from problems.rules import Choice, Foreign, Number, Place, Position, Range, Span, Text, fault
+from problems.rules import (
+    Choice,
+    Foreign,
+    Number,
+    Place,
+    Position,
+    Range,
+    Series,
+    Span,
+    Text,
+    fault,
+)
 from problems.units import format_value
 
 Value = TypeVar("Value")
@@ -58,6 +69,15 @@ _SHARE = Number("a share of the length", '"6 %"', "1", 0.0, 1.0, open_low=True)
 _DISTANCE = Number("a distance", '"30 mm"', "m", 0.0, 100.0, open_low=True)
 _WIRE = Number("a wire diameter", '"1 mm"', "m", 0.0, 0.1)
 _WIRE_DRAG = Number("a drag coefficient", "1.0", "1", 0.5, 2.0)
+_STOCK = Number("a wire diameter", '"0.8 mm"', "m", 0.0, 0.1, open_low=True)
+# Wire that one can expect to find: preferred numbers R10 of ISO 3 (from memory), 0.2 to 6.3 mm
+STOCK = tuple(
+    1e-3 * size
+    for size in (
+        *(0.2, 0.25, 0.315, 0.4, 0.5, 0.63, 0.8, 1.0),
+        *(1.25, 1.6, 2.0, 2.5, 3.15, 4.0, 5.0, 6.3),
+    )
+)
 _EFFICIENCY = Number("an efficiency", "0.55", "1", 0.0, 1.0, open_low=True)
 
 
@@ -204,13 +224,43 @@ class Flow(Table):
 
 
 class Trip(Table):
-    """A wire across the flow on each swept face; height 0 is no wire."""
+    """Wires across the flow; height 0 is no wire.
+
+    `wires` of them in a row, `spacing` apart (as `position`, a share of the length or metres);
+    `sort` "grit" is a strip of three-dimensional grit of that height; `walls` says whether both
+    walls of a gap (both faces of a plate) carry them or one, and `facing` whether the wires of a
+    gap stand opposite each other or staggered.
+    """
 
     position: Annotated[
         Position, Place(Range(_SHARE, '["1 %", "90 %"]'), Range(_DISTANCE, '["5 mm", "200 mm"]'))
     ]
     height: Annotated[Span, Range(_WIRE, '["0.2 mm", "4 mm"]')]
     drag_coefficient: Annotated[float, _WIRE_DRAG, Assumed("wire on a wall, 0.6 to 1.2")] = 1.0
+    sort: Annotated[Literal["wire", "grit"], Choice(("wire", "grit"))] = "wire"
+    wires: Annotated[Literal[1, 2, 3], Choice((1, 2, 3))] = 1
+    spacing: Annotated[
+        Position | None,
+        Place(Range(_SHARE, '["5 %", "40 %"]'), Range(_DISTANCE, '["10 mm", "200 mm"]')),
+    ] = Field(default=None, validate_default=True)
+    walls: Annotated[Literal["both", "one"], Choice(("both", "one"))] = "both"
+    facing: Annotated[Literal["opposite", "staggered"], Choice(("opposite", "staggered"))] = (
+        "opposite"
+    )
+    stock: Annotated[tuple[float, ...], Series(_STOCK, '["0.5 mm", "0.8 mm", "1 mm"]')] = STOCK
+
+    @field_validator("spacing")
+    @classmethod
+    def _between_several(cls, spacing: Position | None, info: ValidationInfo) -> Position | None:
+        count = info.data.get("wires")
+        if count is not None and (count > 1) != (spacing is not None):
+            says = (
+                'a spacing such as "20 %" when wires is 2 or 3'
+                if count > 1
+                else ("only with wires = 2 or 3; take it out")
+            )
+            raise fault(says)
+        return spacing
 
     @property
     def position_is_share(self) -> bool:

@@ -12,6 +12,7 @@ _SHARED = (
     Outcome("heat_flux", "W/m2", "heat over swept plate area"),
     Outcome("mean_h", "W/(m2 K)", "mean heat transfer coefficient"),
     Outcome("least_h", "W/(m2 K)", "least local heat transfer coefficient"),
+    Outcome("evenness", "1", "least over mean local flux; under a flux mean over highest excess"),
     Outcome("drag", "N", "force of the flow on plates and wires: wall shear and wire drag"),
     Outcome("wire_drag", "N", "the part of the drag that the trip wires carry"),
     Outcome("fan_power", "W", "power that the fan or pump draws"),
@@ -52,6 +53,7 @@ _PLATE_SETTINGS = (
     Outcome("velocity", "m/s", "free-stream velocity; for a stack the mean in the gap, at inlet"),
     Outcome("trip_position", "m", "wire from the leading edge; 0 without a wire"),
     Outcome("trip_height", "m", "wire diameter; 0 without a wire"),
+    Outcome("trip_pitch", "m", "from one wire to the next; 0 with one wire or none"),
     Outcome("width", "m", "plate width across the flow"),
     Outcome("thickness", "m", "plate thickness"),
 )

@@ -147,6 +147,7 @@ def _common(
         "heat_flux": outcomes["heat"] / outcomes["plate_area"],
         "mean_h": walked.h,
         "least_h": sweep.least_stanton * capacity,
+        "evenness": sweep.evenness,
         "heat_per_power": np.abs(outcomes["heat"]) / np.maximum(outcomes["fan_power"], 1e-12),
         "film_temperature": walked.film,
         "plate_mass": one_side * given["thickness"] * case.plates.material_density,

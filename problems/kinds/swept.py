@@ -16,8 +16,9 @@ from numpy.typing import NDArray
 from problems.case import Case, Span
 from problems.convection import transition
 from problems.convection.fluids import Fluid, Properties
-from problems.convection.sweep import Surface, Sweep, sweep
+from problems.convection.sweep import Surface, Sweep, one_wall_wired, sweep
 from problems.problem import Variable
+from problems.tables import Trip
 
 Floats = NDArray[np.float64]
 Settings = Mapping[str, Floats]
@@ -60,9 +61,16 @@ def spans(case: Case) -> dict[str, tuple[Span, str]]:
             "1" if share else "m",
         )
         found["trip_height"] = (case.trip.height, "m")
+        if case.trip.spacing is not None:
+            share = case.trip.spacing.is_share
+            found["trip_pitch_share" if share else "trip_pitch"] = (
+                case.trip.spacing,
+                "1" if share else "m",
+            )
     return found
 
 
+_ONLY_WITH_WIRE = ("trip_share", "trip_position", "trip_pitch_share", "trip_pitch")
 _MEANING = {
     "length": "plate length along the flow",
     "gap": "clear gap between plates",
@@ -70,6 +78,8 @@ _MEANING = {
     "trip_share": "trip wire from the leading edge, share of the length",
     "trip_position": "trip wire from the leading edge",
     "trip_height": "diameter of the trip wire",
+    "trip_pitch_share": "from one trip wire to the next, share of the length",
+    "trip_pitch": "from one trip wire to the next",
 }
 
 
@@ -83,7 +93,7 @@ def variables(case: Case) -> tuple[Variable, ...]:
             high=span.high,
             meaning=_MEANING[name],
             scale="log" if span.low > 0.0 and span.high > 3.0 * span.low else "linear",
-            only_with="trip_height" if name in ("trip_share", "trip_position") else None,
+            only_with="trip_height" if name in _ONLY_WITH_WIRE else None,
         )
         for name, (span, unit) in spans(case).items()
         if not span.fixed
@@ -98,11 +108,12 @@ def settings(case: Case, designs: Floats) -> dict[str, Floats]:
         name: np.full(count, span.low) if span.fixed else np.ascontiguousarray(next(free))
         for name, (span, _) in spans(case).items()
     }
-    if "trip_share" in values:
-        values["trip_position"] = values.pop("trip_share") * values["length"]
-    for name in ("trip_position", "trip_height"):
+    for share, place in (("trip_share", "trip_position"), ("trip_pitch_share", "trip_pitch")):
+        if share in values:
+            values[place] = values.pop(share) * values["length"]
+    for name in ("trip_height", "trip_position", "trip_pitch"):
         values.setdefault(name, np.zeros(count))
-    values["trip_position"] = np.where(values["trip_height"] > 0.0, values["trip_position"], 0.0)
+        values[name] = np.where(values["trip_height"] > 0.0, values[name], 0.0)
     values["width"] = np.full(count, case.plates.width)
     values["thickness"] = np.full(count, case.plates.thickness)
     return values
@@ -154,6 +165,27 @@ def walk(
     return done
 
 
+def _wired(
+    case: Case, trip: Trip, plain: Surface, given: Settings, per_metre: Floats
+) -> tuple[Surface, Sweep]:
+    """The surface with its wires and the walk along it; with wires on one side, along both."""
+    one = trip.walls == "one"
+    surface = replace(
+        plain,
+        wire_x=per_metre * given["trip_position"],
+        wire_k=per_metre * given["trip_height"],
+        wire_spacing=per_metre * given["trip_pitch"],
+        wires=trip.wires,
+        facing=1 if one or trip.facing == "staggered" else 2,
+        grit=trip.sort == "grit",
+        drag_coefficient=trip.drag_coefficient,
+    )
+    walked = sweep(surface)
+    if one and not (case.kind == "plate" and case.plates.faces == 1):
+        walked = one_wall_wired(walked, sweep(plain), plain.flux)
+    return surface, walked
+
+
 def _updated(whole: Any, index: NDArray[np.intp], part: Any) -> Any:
     """`whole` with the designs at `index` taken from `part`, through nested dataclasses."""
     if isinstance(whole, np.ndarray):
@@ -162,7 +194,7 @@ def _updated(whole: Any, index: NDArray[np.intp], part: Any) -> Any:
         return merged
     if isinstance(whole, tuple):
         return tuple(_updated(old, index, new) for old, new in zip(whole, part, strict=True))
-    if not is_dataclass(whole):
+    if not is_dataclass(whole) or isinstance(whole, type):
         return whole
     names = [item.name for item in fields(whole)]
     changes = {name: _updated(getattr(whole, name), index, getattr(part, name)) for name in names}
@@ -179,8 +211,7 @@ def _walk_at(case: Case, fluid: Fluid, given: Settings, film: Floats) -> Walked:
         flux_density = fluid.at(np.array([case.fluid.temperature])).rho * given["velocity"]
     per_metre = flux_density / properties.mu
     level, natural = free_stream_turbulence(case)
-    wired = case.trip is not None
-    rough = case.plates.roughness > 0.0
+    trip, rough = case.trip, case.plates.roughness > 0.0
     surface = Surface(
         re_l=per_metre * given["length"],
         pr=properties.pr,
@@ -188,12 +219,12 @@ def _walk_at(case: Case, fluid: Fluid, given: Settings, film: Floats) -> Walked:
         turbulence=level,
         re_d=None if gap is None else per_metre * 2.0 * gap,
         re_rough=per_metre * case.plates.roughness if rough else None,
-        wire_x=per_metre * given["trip_position"] if wired else None,
-        wire_k=per_metre * given["trip_height"] if wired else None,
-        drag_coefficient=1.0 if case.trip is None else case.trip.drag_coefficient,
         flux=case.plates.surface.flux is not None,
     )
-    walked = sweep(surface)
+    if trip is None:
+        walked = sweep(surface)
+    else:
+        surface, walked = _wired(case, trip, surface, given, per_metre)
     units = np.zeros_like(film) if gap is None else 2.0 * walked.stanton * given["length"] / gap
     return Walked(
         surface=surface,
