@@ -19,6 +19,7 @@ from optim.archive import Indices, thin_evenly
 from optim.errors import RunError
 from optim.front import Front, tabulated
 from optim.misses import nearest_miss
+from optim.plainer import plainer
 from optim.polish import polished
 from optim.provenance import provenance
 from optim.search import Progress
@@ -143,14 +144,16 @@ def _figure(task: Task, state: State) -> float | None:
 def _front(task: Task, state: State, reason: str, seed: int, size: int) -> Front:
     if len(task.aims) == 1:
         units, aims, extra = polished(task, state)
+        units, aims, tried = plainer(task, units, aims)
         rows = thin_evenly(units, size, first=np.array([np.argmin(aims[:, 0])]))
     else:
         units, aims, extra = state.kept_units, state.kept_aims, 0
+        units, aims, tried = plainer(task, units, aims)
         rows = thin_evenly(aims, size)
     thinned = _thinned(aims, rows)
     rows = rows[_reading_order(task, aims[rows])]
     designs, given = _evaluated_again(task, units[rows])
-    facts = provenance(task, state, reason, seed, state.evaluations + extra, given)
+    facts = provenance(task, state, reason, seed, state.evaluations + extra + tried, given)
     facts["thinned"] = thinned
     return Front(tabulated(task.problem, designs, given), facts, task.problem.source)
 

@@ -112,6 +112,21 @@ def designs(problem: Problem, units: Floats) -> Floats:
     return np.clip(np.where(logarithmic, curved, straight), low, high)
 
 
+def units_of(problem: Problem, chosen: Floats) -> Floats:
+    """Positions (n, free) in the unit box of designs (n, number of variables) in SI."""
+    low, high = _ends(problem)
+    logarithmic = np.array([v.scale == "log" and v.low > 0.0 for v in problem.variables], bool)
+    span = np.where(high > low, high - low, 1.0)
+    share = (chosen - low) / span
+    safe_low, safe_high = np.where(logarithmic, low, 1.0), np.where(logarithmic, high, 2.0)
+    safe = np.where(logarithmic, chosen, 1.0)
+    curved = np.log(safe / safe_low) / np.log(
+        np.where(safe_high > safe_low, safe_high / safe_low, 2.0)
+    )
+    units = np.where(logarithmic, curved, share)[:, _movable(problem)]
+    return np.clip(units, 0.0, 1.0)
+
+
 def _sides(limit: Limit) -> list[Bound]:
     sides = []
     if limit.at_least is not None:
