@@ -31,9 +31,7 @@ BOILS = "the liquid may boil at the wall"
 TALL = "the wire is taller than the boundary layer: it over-trips, and its drag is uncertain"
 DOUBTFUL = "turbulence behind the wire may not hold (Re_theta 200 to 320)"
 MARGINAL = "the wire is marginal: U k/nu between 826 and 900"
-SMALL = (
-    "the wire is under U k/nu 826: it only moves transition upstream, and by how much is uncertain"
-)
+SMALL = "the wire is under U k/nu 826: it moves transition upstream, by how much is uncertain"
 BAND = "the passage lies in the transitional band (Re_D 2300 to 4000), where flow is unsteady"
 ROUGH = "the surface is rough enough to move transition upstream (U k_s/nu over 100)"
 DENSE = "the pressure drop is over 5 % of the absolute pressure: density varies more than assumed"

@@ -19,7 +19,7 @@ from problems.convection.flat_plate import smooth_step
 from problems.convection.fluids import Fluid, FluidError
 from problems.kinds import cautions, laws, pictures, plate, stack, words
 from problems.kinds.outcomes import OUTCOMES, SETTINGS
-from problems.kinds.swept import CHUNK, Walked, settings, variables
+from problems.kinds.swept import CHUNK, Settings, Walked, settings, variables
 from problems.problem import Evaluation, Floats, Problem, Profile, Sketch
 
 _Scalar = TypeVar("_Scalar", bound=np.generic)
@@ -72,12 +72,24 @@ class SweptPlates(Problem):
 
     def evaluate(self, designs: Floats) -> Evaluation:
         """Evaluate designs of shape (n, number of variables); see `Problem.evaluate`."""
-        designs = np.atleast_2d(np.asarray(designs, dtype=float))
-        parts = [self._evaluate(designs[k : k + CHUNK]) for k in range(0, len(designs), CHUNK)]
+        designs = np.asarray(designs, dtype=float)
+        if designs.ndim != 2:
+            designs = designs.reshape(-1, len(self.variables))
+        return self.evaluate_settings(settings(self.case, designs))
+
+    def evaluate_settings(self, given: Settings) -> Evaluation:
+        """Evaluate designs given by their settings in full: the free ones of `swept.settings`.
+
+        Every array has shape (n,); ranges of the case do not bind here.
+        """
+        count = len(given["length"])
+        parts = []
+        for start in range(0, max(count, 1), CHUNK):
+            some = {name: values[start : start + CHUNK] for name, values in given.items()}
+            parts.append(self._evaluate(self._balanced(some)))
         return joined(parts) if len(parts) > 1 else parts[0]
 
-    def _evaluate(self, designs: Floats) -> Evaluation:
-        batch = self.batch(designs)
+    def _evaluate(self, batch: Batch) -> Evaluation:
         impossible_by, reasons = _impossible(self.fluid, batch)
         walk = laws.Walk(batch.walked.surface, batch.walked.sweep)
         return Evaluation(
@@ -95,7 +107,10 @@ class SweptPlates(Problem):
 
     def batch(self, designs: Floats) -> Batch:
         """Walk along designs of shape (n, number of variables) and balance them."""
-        given = settings(self.case, designs)
+        return self._balanced(settings(self.case, designs))
+
+    def _balanced(self, given: Settings) -> Batch:
+        given = dict(given)
         if self.kind == "stack":
             given = stack.complete(self.case, given)
         balance = stack.balance if self.kind == "stack" else plate.balance
