@@ -85,16 +85,19 @@ def _stream(
 
 
 def _wire(walked: Walked) -> dict[str, Bools]:
-    """Cautions on the trip wire."""
+    """Cautions on the trip wires, judged by the first."""
     wire, onset = walked.sweep.wire, walked.sweep.onset
     if wire is None:
         return {}
     there = (wire.re_x < np.minimum(onset.natural, walked.surface.re_l)) & (wire.re_height > 1.0)
-    behind = wire.re_theta + wire.thickening(np.zeros_like(wire.re_theta))
+    behind = walked.sweep.behind_wires
     layers = 4.91 / DISPLACEMENT
-    return {
-        TALL: there & (wire.height_over_displacement > layers),
+    masks = {TALL: there & (wire.height_over_displacement > layers)}
+    doubtful = there & (behind > 200.0) & (behind < 320.0)
+    if wire.grit:
+        return masks | {DOUBTFUL: doubtful & (wire.top_reynolds > 500.0)}
+    return masks | {
         SMALL: there & (wire.reynolds < 826.0) & (onset.re_x < 0.95 * onset.natural),
         MARGINAL: there & (wire.reynolds > 826.0) & (wire.reynolds < 900.0),
-        DOUBTFUL: there & (wire.reynolds > 826.0) & (behind > 200.0) & (behind < 320.0),
+        DOUBTFUL: doubtful & (wire.reynolds > 826.0),
     }

@@ -150,6 +150,15 @@ _WIRE: tuple[Law, Outside] = (
     _wire,
 )
 
+_GRIT: tuple[Law, Outside] = (
+    Law(
+        "strip of grit",
+        "Braslow and Knox 1958 (Re_k 600), Preston 1958; drag 0.3 of a wire's is assumed",
+        "sparse three-dimensional grit, under half of the gap",
+    ),
+    _wire,
+)
+
 _ROUGH: tuple[Law, Outside] = (
     Law(
         "rough turbulent wall",
@@ -188,13 +197,14 @@ _ENDS: tuple[Law, Outside] = (
 )
 
 
-def in_use(
-    *, passage: bool, wire: bool, rough: bool, ends: bool
-) -> tuple[tuple[Law, Outside], ...]:
-    """The laws that a problem with these features uses, each with the test of its range."""
+def in_use(*, passage: bool, trip: str | None, rough: bool, ends: bool) -> Ranges:
+    """The laws that a problem with these features uses, each with the test of its range.
+
+    `trip` is None, "wire" or "grit".
+    """
     chosen = _COMMON
-    if wire:
-        chosen = (*chosen, _WIRE)
+    if trip is not None:
+        chosen = (*chosen, _GRIT if trip == "grit" else _WIRE)
     if rough:
         chosen = (*chosen, _ROUGH)
     if passage:

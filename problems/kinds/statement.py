@@ -62,7 +62,7 @@ class SweptPlates(Problem):
         self.aims, self.limits = case.aims, case.limits
         self._ranges = laws.in_use(
             passage=case.kind == "stack",
-            wire=case.trip is not None,
+            trip=None if case.trip is None else case.trip.sort,
             rough=case.plates.roughness > 0.0,
             ends=case.kind == "stack" and case.plates.ends != "none",
         )

@@ -18,6 +18,7 @@ from problems.kinds import plate
 from problems.kinds.laws import Walk
 from problems.kinds.swept import free_stream_turbulence
 from problems.problem import Floats
+from problems.tables import Trip
 
 if TYPE_CHECKING:
     from problems.kinds.statement import Batch
@@ -61,9 +62,22 @@ def notes(case: Case) -> tuple[str, ...]:
             "The velocity is the mean in the gap at inlet density. The pressure drop is static, "
             "from plenum to plenum, and more than wall shear: the core speeds up, the ends lose."
         )
-    if case.trip is not None and case.kind == "stack":
-        said.append("Every gap carries a wire on both its walls, at the same place.")
+    if case.trip is not None:
+        said.append(_trip_note(case, case.trip))
     return tuple(said)
+
+
+def _trip_note(case: Case, trip: Trip) -> str:
+    """What stands on the plates to force transition."""
+    what = "strip of grit" if trip.sort == "grit" else "wire"
+    row = f"a {what}" if trip.wires == 1 else f"{trip.wires} {what}s in a row"
+    if case.kind == "plate":
+        where = "one face" if trip.walls == "one" or case.plates.faces == 1 else "both faces"
+        return f"The plate carries {row} on {where}."
+    if trip.walls == "one":
+        return f"Every gap carries {row} on one of its walls; the other wall is plain."
+    how = "at the same place" if trip.facing == "opposite" else "staggered"
+    return f"Every gap carries {row} on both its walls, {how}."
 
 
 def remarks(case: Case, batch: Batch) -> tuple[str, ...]:
@@ -73,7 +87,7 @@ def remarks(case: Case, batch: Batch) -> tuple[str, ...]:
     sweep = walked.sweep
     metre = length / float(walked.surface.re_l[0])
     said = [_regime(batch, length)]
-    if sweep.wire is not None and float(batch.settings["trip_height"][0]) > 0.0:
+    if sweep.wires and float(batch.settings["trip_height"][0]) > 0.0:
         said.extend(_wire(batch, length, metre))
     if case.plates.roughness > 0.0:
         rough = float(np.asarray(walked.surface.re_rough)[0])
@@ -101,27 +115,36 @@ def _regime(batch: Batch, length: float) -> str:
 
 
 def _wire(batch: Batch, length: float, metre: float) -> list[str]:
-    """Does the wire trip, does it hold, what does it cost."""
+    """Does the wire (or the first of a row) trip, does it hold, what does it cost."""
     sweep, outcomes = batch.walked.sweep, batch.outcomes
-    wire, onset = sweep.wire, sweep.onset
-    if wire is None:
-        return []
+    wire, onset = sweep.wires[0], sweep.onset
     place = float(batch.settings["trip_position"][0])
-    reynolds = float(wire.reynolds[0])
     natural = float(onset.natural[0]) * metre
-    head = f"Wire at {1e3 * place:.0f} mm: U k/nu = {reynolds:.0f}"
+    name, figure = ("Grit", "Re_k") if wire.grit else ("Wire", "U k/nu")
+    reynolds = float((wire.top_reynolds if wire.grit else wire.reynolds)[0])
+    head = f"{name} at {1e3 * place:.0f} mm: {figure} = {reynolds:.0f}"
     if place > length:
         return [f"{head}. It stands behind the end of the plate: no effect, no drag."]
     if place > natural:
         return [f"{head}. It stands behind natural transition ({1e3 * natural:.0f} mm): only drag."]
     share = float(outcomes["wire_drag"][0]) / float(outcomes["drag"][0])
-    cost = f" It carries {share:.0%} of the drag."
+    cost = (
+        f" {'It carries' if len(sweep.wires) == 1 else 'The row carries'} {share:.0%} of the drag."
+    )
     if float(sweep.sustains[0]) == 0.0:
         return [
             f"{head}. The gap cannot keep up turbulence: it costs drag and gives nothing.{cost}"
         ]
-    behind = float((wire.re_theta + wire.thickening(np.zeros(1)))[0])
-    return [f"{head}, {_trips(reynolds)}; {_holds(behind)}.{_moved(batch, place)}{cost}"]
+    behind = float(sweep.behind_wires[0])
+    row = "" if len(sweep.wires) == 1 else f" the last of {len(sweep.wires)}"
+    verdict = _grit(reynolds) if wire.grit else _trips(reynolds)
+    return [f"{head}, {verdict}; {_holds(behind, row)}.{_moved(batch, place)}{cost}"]
+
+
+def _grit(reynolds: float) -> str:
+    if reynolds >= transition.GRIT_DESIGN:
+        return "it trips (600)"
+    return "marginal (500 to 600)" if reynolds >= transition.GRIT_LOW else "too small to trip (600)"
 
 
 def _trips(reynolds: float) -> str:
@@ -132,8 +155,8 @@ def _trips(reynolds: float) -> str:
     return "too small to trip (826)"
 
 
-def _holds(behind: float) -> str:
-    text = f"Re_theta behind it {behind:.0f}"
+def _holds(behind: float, row: str) -> str:
+    text = f"Re_theta behind{row or ' it'} {behind:.0f}"
     if behind >= transition.HOLDS:
         return f"{text}, turbulence holds (320)"
     if behind >= transition.FAILS:
