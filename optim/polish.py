@@ -19,6 +19,8 @@ _STARTS = 4
 _STEP = 1e-5  # of the box, for the differences
 _INSIDE = 1e-9  # of a bound: how far inside it the polished design stays
 _ROUNDS = 60
+_PATIENCE, _GAIN = 25, 1e-8  # positions tried without such a gain (of the aim's size) end a climb
+_FORFEIT = 10.0  # of the aim's size: what breaking a bound by its own size counts in a climb
 
 
 def polished(task: Task, state: State) -> tuple[Floats, Floats, int]:
@@ -58,14 +60,37 @@ def _pulled_back(found: Floats, safe: Floats) -> Floats:
     return np.clip(trial.reshape(-1, found.shape[1]), 0.0, 1.0)
 
 
+class _StalledError(Exception):
+    """A climb that gets no further, as beside a kink, where slopes mislead."""
+
+
 @dataclass
 class _Slopes:
-    """Aim, room under each bound and their slopes at one position, from one batch of designs."""
+    """Aim, room under each bound and their slopes at one position, from one batch of designs.
+
+    Remembers the best position since `begin`; raises _StalledError where none better is found.
+    """
 
     task: Task
     size: float
     evaluations: int = 0
     last: tuple[bytes, Scores, Floats] | None = field(default=None, repr=False)
+    best: Floats = field(default_factory=lambda: np.empty(0), repr=False)
+    worth: float = np.inf
+    tried: int = 0
+
+    def begin(self, start: Floats) -> None:
+        """Forget the climb before this one."""
+        self.best, self.worth, self.tried, self.last = start, np.inf, 0, None
+
+    def _judge(self, place: Floats, scores: Scores) -> None:
+        worth = scores.aims[0, 0] / self.size + _FORFEIT * scores.violation[0]
+        if worth < self.worth - _GAIN:
+            self.best, self.worth, self.tried = place.copy(), float(worth), 0
+            return
+        self.tried += 1
+        if self.tried > _PATIENCE:
+            raise _StalledError
 
     def around(self, place: Floats) -> tuple[Scores, Floats]:
         """Scores at `place` and on both sides of it in each variable, with the distances."""
@@ -77,6 +102,7 @@ class _Slopes:
             self.evaluations += len(batch)
             half = len(place) + 1
             self.last = key, scores, np.diagonal(batch[1:half] - batch[half:])
+            self._judge(place, scores)
         return self.last[1], self.last[2]
 
     def aim(self, place: Floats) -> float:
@@ -105,14 +131,18 @@ def _climbed(slopes: _Slopes, start: Floats) -> Floats:
     from scipy.optimize import Bounds, NonlinearConstraint, minimize
 
     room = NonlinearConstraint(slopes.room, 0.0, np.inf, jac=slopes.room_slope)
-    end = minimize(
-        slopes.aim,
-        start,
-        jac=slopes.aim_slope,
-        method="SLSQP",
-        bounds=Bounds(0.0, 1.0),
-        constraints=[room] if slopes.task.bounds else [],
-        options={"maxiter": _ROUNDS, "ftol": 1e-13},
-    )
+    slopes.begin(start)
+    try:
+        end = minimize(
+            slopes.aim,
+            start,
+            jac=slopes.aim_slope,
+            method="SLSQP",
+            bounds=Bounds(0.0, 1.0),
+            constraints=[room] if slopes.task.bounds else [],
+            options={"maxiter": _ROUNDS, "ftol": 1e-13},
+        )
+    except _StalledError:
+        return slopes.best
     place = np.asarray(end.x, dtype=float)
     return np.clip(place, 0.0, 1.0) if np.isfinite(place).all() else start

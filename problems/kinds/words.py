@@ -166,6 +166,8 @@ def _holds(behind: float, row: str) -> str:
 
 def _moved(batch: Batch, place: float) -> str:
     onset = float(batch.outcomes["onset"][0])
+    if onset >= float(batch.settings["length"][0]):
+        return " Transition does not begin on the plate."
     if onset <= 1.02 * place:
         return " Transition begins at the wire."
     return f" Transition begins {1e3 * (onset - place):.0f} mm behind it."
