@@ -174,6 +174,7 @@ class Plates(Table):
     ends: Annotated[Literal["sharp", "smooth", "none"], Choice(("sharp", "smooth", "none"))] = (
         "sharp"
     )
+    feed: Annotated[Literal["duct", "plenum"], Choice(("duct", "plenum"))] = "duct"
     faces: Annotated[Literal[1, 2], Choice((1, 2))] = 2
     material_density: Annotated[float, _DENSITY, Assumed("aluminium")] = 2700.0
 
@@ -189,6 +190,7 @@ class SinglePlate(Plates):
     count: Annotated[None, _NO_STACK] = None
     height: Annotated[None, _NO_STACK] = None
     ends: Annotated[Literal["sharp"], _NO_STACK] = "sharp"
+    feed: Annotated[Literal["duct"], _NO_STACK] = "duct"
     faces: Annotated[Literal[1, 2], Choice((1, 2)), Assumed("swept on both faces")] = 2
 
 
@@ -202,6 +204,11 @@ class StackPlates(Plates):
         Choice(("sharp", "smooth", "none")),
         Assumed("sheared edges"),
     ] = "sharp"
+    feed: Annotated[
+        Literal["duct", "plenum"],
+        Choice(("duct", "plenum")),
+        Assumed("ducts of the stack's own section before and behind it"),
+    ] = "duct"
     faces: Annotated[Literal[2], _BOTH_FACES] = 2
 
     @field_validator("height")

@@ -103,13 +103,16 @@ def rough_friction(cf_smooth: Floats, re_x: Floats, re_roughness: Floats) -> tup
 
 
 def rough_stanton(cf: Floats, pr: Floats, re_roughness: Floats) -> Floats:
-    """Local Stanton number [-] of a fully rough turbulent layer; Kays and Crawford (from memory).
+    """Local Stanton number [-] of a fully rough turbulent layer.
 
-    St = (cf/2) / [0.9 + sqrt(cf/2) k_s+^0.2 Pr^0.44 / 0.8].
+    St = (cf/2) / [1 + sqrt(cf/2) (5.19 k_s+^0.2 Pr^0.44 - 8.48)], Dipprey and Sabersky 1963, Pr 1.2
+    to 6; in gases not above Kays and Crawford, 0.9 + sqrt(cf/2) k_s+^0.2 Pr^0.44 / 0.8 below the
+    line (both from memory).
     """
     shear = np.sqrt(0.5 * cf)
-    height = np.maximum(re_roughness * shear, 1.0)
-    return shear**2 / (0.9 + shear * height**0.2 * pr**0.44 / 0.8)
+    grain = np.maximum(re_roughness * shear, 1.0) ** 0.2 * pr**0.44
+    liquids, gases = 1.0 + shear * (5.19 * grain - 8.48), 0.9 + shear * grain / 0.8
+    return shear**2 / np.maximum(liquids, gases)
 
 
 def profile_mean_square(eta: Floats) -> Floats:

@@ -63,8 +63,8 @@ def developed_nusselt(re_d: Floats, pr: Floats, relative_roughness: Floats) -> F
     """Nusselt number [-] far downstream in turbulent flow between plates, on 2 s.
 
     Gnielinski 1976, Pr 0.5 to 2000, Re 3e3 to 5e6; in and below the band its value at the upper
-    end is used (Gnielinski 2013). Rough walls by Norris: (f/f0)^(0.68 Pr^0.215), f/f0 up to 4
-    (from memory).
+    end is used (Gnielinski 2013). Rough walls by Norris: (f/f0)^(0.68 Pr^0.215), exponent up
+    to 1, f/f0 up to 4 (from memory).
     """
     re = np.maximum(re_d, BAND_HIGH)
     eighth = darcy_friction(re) / 8.0
@@ -73,7 +73,7 @@ def developed_nusselt(re_d: Floats, pr: Floats, relative_roughness: Floats) -> F
     if not np.any(relative_roughness > 0.0):
         return smooth
     ratio = np.minimum(roughness_ratio(re, relative_roughness), 4.0)
-    return smooth * ratio ** (0.68 * pr**0.215)
+    return smooth * ratio ** np.minimum(0.68 * pr**0.215, 1.0)
 
 
 def local_entrance(diameters: Floats) -> Floats:

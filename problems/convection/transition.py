@@ -31,7 +31,8 @@ GRIT_LOW, GRIT_DESIGN = (
     600.0,
 )  # Re_k of three-dimensional grit, Braslow and Knox 1958 (memory)
 GRIT_COVER = 0.3  # frontal share of a sparse strip of grit, over a wire as tall (our assumption)
-_WIRE_NONE = 740.0  # where the smooth weight begins; as wide below 826 as it is above
+_DRYDEN = 0.8  # k/delta* up to which the law for small wires is used
+_WIRE_NONE = 600.0  # where the smooth weight begins: five sixths at 826, 1 from 900
 HOLDS, FAILS = 320.0, 200.0  # Re_theta behind the wire, Preston 1958 (from memory)
 FORCED_LENGTH = 2e4  # Re from an effective wire to full turbulence, Kraemer 1961 (from memory)
 COMPLETE = 3.3433  # xi at which the intermittency is 0.99
@@ -116,6 +117,13 @@ class Wire:
         return self.reynolds * profile_velocity(BLASIUS * self.height_over_theta)
 
     @property
+    def margin(self) -> Floats:
+        """Over the figure that is sure to trip: U k/nu over 900, of grit Re_k over 600 [-]."""
+        if self.grit:
+            return self.top_reynolds / GRIT_DESIGN
+        return self.reynolds / WIRE_DESIGN
+
+    @property
     def height_over_theta(self) -> Floats:
         """Wire diameter over the laminar momentum thickness at its place [-]."""
         return self.reynolds / self.re_theta
@@ -146,7 +154,7 @@ class Wire:
         return step * self.squeeze * self.on_plate
 
     def trips(self) -> Floats:
-        """Smooth weight of the criterion U k/nu: a little over half at 826, 1 from 900.
+        """Smooth weight of the criterion U k/nu: 0 at 600, five sixths at 826, 1 from 900.
 
         Grit: of the criterion Re_k, 0 at 500 and 1 from 600.
         """
@@ -162,11 +170,14 @@ class Wire:
     def added_turbulence(self) -> Floats:
         """Turbulence [%] that a wire too small to trip acts like; Dryden 1958, 4.4 (k/delta*)^3.
 
-        Grit too small to trip does next to nothing.
+        Levels off at k/delta* 0.8, the end of its range: else a taller wire that fails the criteria
+        of `trips` or `holds` would be credited with transition at itself all the same. Grit too
+        small to trip does next to nothing.
         """
         if self.grit:
             return np.zeros_like(self.re_x)
-        ratio = np.minimum(self.height_over_displacement, 5.0)
+        ratio = self.height_over_displacement
+        ratio = ratio / (1.0 + (ratio / _DRYDEN) ** 8) ** 0.125
         return 4.4 * ratio**3 * smooth_step(ratio, 0.1, 0.3) * self.on_plate
 
 

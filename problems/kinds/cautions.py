@@ -22,12 +22,21 @@ GENERAL = (
     "Local codes and licensed practice decide; this is a sizing aid, not an approval.",
 )
 
-BUOYANT = "buoyancy counts beside the forced flow (Gr/Re^2 over 0.1)"
-FAST = "the stream is so fast that compressibility counts (Mach over 0.3)"
+BUOYANT = (
+    "buoyancy counts beside the forced flow (Gr/Re^2 over 0.1): whether it helps, hinders or "
+    "crosses the stream is not told apart"
+)
+FAST = "the stream is somewhere so fast that compressibility counts (Mach over 0.3)"
 CONDUCTIVE = "conduction along the stream counts (Peclet number under 100)"
 SPENT = "the outlet is within 1 % of the wall temperature: the last part of the plate does nothing"
 WET = "moisture condenses: a surface lies under the dew point"
-BOILS = "the liquid may boil at the wall"
+NEAR_BOILING = "a wall is within 5 K of boiling"
+VARIABLE = (
+    "wall and stream differ so much (absolute temperatures by over a quarter, or a liquid's "
+    "viscosity by over a factor 2) that film properties are only a rough guide"
+)
+RUBBED = "friction warms the fluid noticeably (Brinkman number over 0.1)"
+STUBBY = "the plates are shorter than ten times their thickness: the edges are not thin"
 TALL = "the wire is taller than the boundary layer: it over-trips, and its drag is uncertain"
 DOUBTFUL = "turbulence behind the wire may not hold (Re_theta 200 to 320)"
 MARGINAL = "the wire is marginal: U k/nu between 826 and 900"
@@ -66,22 +75,52 @@ def _stream(
 ) -> dict[str, Bools]:
     """Cautions on the stream as a whole."""
     inlet = case.fluid.temperature
-    difference = np.abs(outcomes["hottest_wall"] - inlet)
+    cold, hot = outcomes["coldest_wall"], outcomes["hottest_wall"]
+    difference = np.maximum(np.abs(hot - inlet), np.abs(cold - inlet))
     reach = 2.0 * settings["gap"] if "gap" in settings else settings["length"]
     lift = GRAVITY * fluid.expansion(walked.film) * difference * reach
     peclet = walked.surface.re_l if walked.surface.re_d is None else walked.surface.re_d
+    properties = walked.properties
+    heating = properties.mu * walked.speed**2 / (properties.k * np.maximum(difference, 1e-9))
     masks = {
         BUOYANT: np.abs(lift) > 0.1 * walked.speed**2,
-        FAST: settings["velocity"] > 0.3 * fluid.sound_speed(walked.film),
-        CONDUCTIVE: peclet * walked.properties.pr < 100.0,
+        FAST: _fastest(fluid, walked, outcomes) > 0.3 * fluid.sound_speed(walked.film),
+        CONDUCTIVE: peclet * properties.pr < 100.0,
+        VARIABLE: _variable(fluid, cold, hot, 2.0 * walked.film),
+        RUBBED: heating > 0.1,
+        STUBBY: settings["length"] < 10.0 * settings["thickness"],
     }
     if fluid.dew_point is not None:
-        coldest = case.plates.surface.temperature
-        cold = np.minimum(walked.film, inlet if coldest is None else coldest)
-        masks[WET] = cold < fluid.dew_point
-    if fluid.saturation_temperature is not None and inlet < fluid.saturation_temperature:
-        masks[BOILS] = outcomes["hottest_wall"] > fluid.saturation_temperature
+        masks[WET] = np.minimum(cold, walked.film) < fluid.dew_point
+    boiling = fluid.saturation_temperature
+    if fluid.phase == "liquid" and boiling is not None:
+        masks[NEAR_BOILING] = hot > boiling - 5.0
     return masks
+
+
+def _fastest(fluid: Fluid, walked: Walked, outcomes: Mapping[str, Floats]) -> Floats:
+    """Highest velocity [m/s]: where the fluid is thinnest, past the wires."""
+    rho = walked.properties.rho
+    if "outlet_temperature" in outcomes:
+        outlet = np.clip(outcomes["outlet_temperature"], fluid.low, fluid.high)
+        rho = np.minimum(rho, fluid.at(outlet).rho)
+    wire = walked.sweep.wire
+    free = 1.0 if wire is None else 1.0 - np.minimum(wire.blockage, 0.9)
+    return walked.flux_density / (rho * free)
+
+
+def _variable(fluid: Fluid, cold: Floats, hot: Floats, twice_film: Floats) -> Bools:
+    """Whether properties change too much between wall and stream for one film temperature."""
+    worst = np.zeros(hot.shape, dtype=bool)
+    for wall in (cold, hot):
+        stream = np.clip(twice_film - wall, fluid.low, fluid.high)
+        if fluid.phase == "gas":
+            ratio = wall / stream
+            worst |= (ratio < 0.8) | (ratio > 1.25)
+        else:
+            thin = fluid.at(np.clip(wall, fluid.low, fluid.high)).mu / fluid.at(stream).mu
+            worst |= (thin < 0.5) | (thin > 2.0)
+    return worst
 
 
 def _wire(walked: Walked) -> dict[str, Bools]:

@@ -64,7 +64,7 @@ def _turbulent_heat(walk: Walk) -> Bools:
 
 def _onset(walk: Walk) -> Bools:
     level = walk.surface.turbulence
-    share = np.full(walk.surface.re_l.shape, level < 0.05 or level > 10.0)
+    share = np.full(walk.surface.re_l.shape, level < 0.3 or level > 10.0)
     return share & (walk.sweep.onset.natural < walk.surface.re_l)
 
 
@@ -78,7 +78,7 @@ def _wire(walk: Walk) -> Bools:
 def _entrance(walk: Walk) -> Bools:
     if walk.surface.re_d is None:
         return np.zeros(walk.surface.re_l.shape, dtype=bool)
-    return walk.surface.re_d < 50.0
+    return (walk.surface.re_d < 50.0) | (walk.surface.pr < 0.5) | (walk.surface.pr > 1e5)
 
 
 def _developed(walk: Walk) -> Bools:
@@ -99,7 +99,8 @@ def _roughness(walk: Walk) -> Bools:
     rough = walk.surface.re_rough
     if rough is None:
         return np.zeros(walk.surface.pr.shape, dtype=bool)
-    return walk.turbulent & (walk.surface.re_l / np.maximum(rough, 1e-9) < 100.0)
+    short = walk.surface.re_l / np.maximum(rough, 1e-9) < 100.0
+    return walk.turbulent & (short | (walk.surface.pr > 6.0))
 
 
 _COMMON: Ranges = (
@@ -119,7 +120,7 @@ _COMMON: Ranges = (
         Law(
             "natural onset",
             "Abu-Ghannam and Shaw 1980; quiet streams Schubauer and Skramstad 1948",
-            "turbulence 0.05 to 10 %; the onset Re_x is good to a factor 1.5 either way",
+            "turbulence 0.3 to 10 %; the onset Re_x is good to a factor 1.5 either way",
         ),
         _onset,
     ),
@@ -162,8 +163,8 @@ _GRIT: tuple[Law, Outside] = (
 _ROUGH: tuple[Law, Outside] = (
     Law(
         "rough turbulent wall",
-        "Prandtl and Schlichting; Haaland 1983; Kays and Crawford; Norris 1970",
-        "sand roughness, length over 100 times its height",
+        "Prandtl and Schlichting; Haaland 1983; Dipprey and Sabersky 1963; Norris 1970",
+        "sand roughness, length over 100 times its height, Pr 0.7 to 6",
     ),
     _roughness,
 )
@@ -173,7 +174,7 @@ _PASSAGE: Ranges = (
         Law(
             "laminar entrance between plates",
             "boundary-layer equations marched; limits: Blasius and developed flow",
-            "uniform inlet stream, Re_D from 50, Pr 0.5 to 10 000",
+            "uniform inlet stream, Re_D from 50, Pr 0.5 to 1e5",
         ),
         _entrance,
     ),
@@ -192,7 +193,11 @@ _PASSAGE: Ranges = (
 )
 
 _ENDS: tuple[Law, Outside] = (
-    Law("entrance and exit of a stack", "Kays 1950", "stack fed from and into plenums"),
+    Law(
+        "entrance and exit of a stack",
+        "Kays 1950",
+        "flow that fills the ducts before and behind the stack",
+    ),
     lambda walk: np.zeros(walk.surface.pr.shape, dtype=bool),
 )
 

@@ -18,6 +18,7 @@ _SHARED = (
     Outcome("fan_power", "W", "power that the fan or pump draws"),
     Outcome("heat_per_power", "1", "heat (absolute) over fan power"),
     Outcome("hottest_wall", "K", "highest surface temperature"),
+    Outcome("coldest_wall", "K", "lowest surface temperature"),
     Outcome("film_temperature", "K", "temperature at which the properties are taken"),
     Outcome("plate_area", "m2", "swept area of all plates"),
     Outcome("plate_mass", "kg", "mass of the plates"),
@@ -25,7 +26,9 @@ _SHARED = (
     Outcome("turbulent_share", "1", "share of the plate length that is turbulent"),
     Outcome("length_reynolds", "1", "Reynolds number on the plate length"),
     Outcome("wire_reynolds", "1", "velocity outside the layer times wire diameter over viscosity"),
-    Outcome("wire_margin", "1", "wire Reynolds number over the design value 900; 0 without a wire"),
+    Outcome(
+        "wire_margin", "1", "wire Reynolds number over 900 (grit: Re_k over 600); 0 without a wire"
+    ),
 )
 
 _STACK = (
@@ -33,7 +36,7 @@ _STACK = (
     Outcome("outlet_temperature", "K", "mixed temperature of the fluid leaving the plates"),
     Outcome("mass_flow", "kg/s", "mass flow through the stack"),
     Outcome("flow_rate", "m3/s", "volume flow through the stack, at inlet density"),
-    Outcome("pressure_drop", "Pa", "static pressure drop from plenum to plenum"),
+    Outcome("pressure_drop", "Pa", "static pressure drop, from before the stack to behind it"),
     Outcome("entrance_drop", "Pa", "part of the pressure drop: contraction and entrance"),
     Outcome("shear_drop", "Pa", "part of the pressure drop: wall shear"),
     Outcome("development_drop", "Pa", "part of the pressure drop: the core speeds up"),

@@ -39,21 +39,27 @@ def balance(case: Case, fluid: Fluid, given: Settings) -> tuple[Walked, dict[str
     wire_drag = walked.sweep.wire_friction * dynamic * area
     drag = walked.sweep.friction * dynamic * area + wire_drag
     if wall is None:
-        heat_flux, hottest = np.full_like(area, flux), wall_under_flux(walked, inlet, flux)
+        heat_flux = np.full_like(area, flux)
+        coldest, hottest = walls_under_flux(walked, inlet, flux)
     else:
-        heat_flux, hottest = walked.h * (wall - inlet), np.full_like(area, wall)
+        heat_flux = walked.h * (wall - inlet)
+        coldest = hottest = np.full_like(area, wall)
     return walked, {
         "heat": heat_flux * area,
         "drag": drag,
         "wire_drag": wire_drag,
         "fan_power": drag * given["velocity"] / case.fan.efficiency,
         "hottest_wall": hottest,
+        "coldest_wall": coldest,
         "plate_area": area,
     }
 
 
-def wall_under_flux(walked: Walked, inlet: float, flux: float) -> Floats:
-    """Highest wall temperature [K] under a uniform flux [W/m2] (negative: out of the fluid)."""
-    if flux < 0.0:
-        return np.full_like(walked.h, inlet)  # the leading edge, where the layer begins
-    return inlet + flux / (walked.flux_density * walked.properties.cp) * walked.sweep.wall_high
+def walls_under_flux(walked: Walked, inlet: float, flux: float) -> tuple[Floats, Floats]:
+    """Lowest and highest wall temperature [K] under a uniform flux [W/m2] (negative: cooled).
+
+    At the leading edge, where the layer begins, the wall has the temperature of the stream.
+    """
+    rise = flux / (walked.flux_density * walked.properties.cp)
+    far, edge = inlet + rise * walked.sweep.wall_high, np.full_like(walked.h, inlet)
+    return (edge, far) if flux > 0.0 else (far, edge)

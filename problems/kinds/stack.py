@@ -1,4 +1,4 @@
-"""Kind `stack`: parallel plates with fluid between them, all gaps alike, fed from a plenum.
+"""Kind `stack`: parallel plates with fluid between them, all gaps alike.
 
 Every gap is swept on both faces and carries a wire on both. The stack count is a real number while
 searching: one plate with its gap, repeated over the height.
@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from problems.case import Case
 from problems.convection import passage
 from problems.convection.fluids import Fluid
-from problems.kinds.plate import wall_under_flux
+from problems.kinds.plate import walls_under_flux
 from problems.kinds.swept import Settings, Walked, walk
 
 Floats = NDArray[np.float64]
@@ -44,10 +44,10 @@ def balance(case: Case, fluid: Fluid, given: Settings) -> tuple[Walked, dict[str
     walked = walk(case, fluid, given, film_of, start)
     if wall is not None:
         outlet = wall - (wall - inlet) * np.exp(-walked.units)
-        hottest, outlet_wall = np.full_like(outlet, wall), np.full_like(outlet, wall)
+        coldest = hottest = outlet_wall = np.full_like(outlet, wall)
     else:
         outlet = inlet + _rise(walked, given, flux)
-        hottest = wall_under_flux(walked, inlet, flux)
+        coldest, hottest = walls_under_flux(walked, inlet, flux)
         local = walked.sweep.outlet_stanton * walked.flux_density * walked.properties.cp
         outlet_wall = outlet + flux / local
     passages = given["count"] * given["width"]
@@ -55,14 +55,17 @@ def balance(case: Case, fluid: Fluid, given: Settings) -> tuple[Walked, dict[str
     flow_rate = given["velocity"] * given["gap"] * passages
     area = 2.0 * passages * given["length"]
     dynamic = 0.5 * walked.flux_density * walked.speed
-    drops = _drops(case, fluid, given, walked, np.clip(outlet, fluid.low, fluid.high))
+    drops = _drops(case, fluid, given, walked, outlet)
     pressure_drop = sum(drops.values(), np.zeros_like(outlet))
     return walked, {
         "heat": mass_flow * walked.properties.cp * (outlet - inlet),
         "drag": (walked.sweep.friction + walked.sweep.wire_friction) * dynamic * area,
         "wire_drag": walked.sweep.wire_friction * dynamic * area,
-        "fan_power": np.maximum(pressure_drop, 0.0) * flow_rate / case.fan.efficiency,
+        "fan_power": _spent(case, fluid, given, walked, outlet, pressure_drop)
+        * flow_rate
+        / case.fan.efficiency,
         "hottest_wall": hottest,
+        "coldest_wall": coldest,
         "plate_area": area,
         "pressure_drop": pressure_drop,
         **drops,
@@ -81,23 +84,52 @@ def _rise(walked: Walked, given: Settings, flux: float) -> Floats:
     return 2.0 * flux * given["length"] / capacity
 
 
+def _porosity(given: Settings) -> Floats:
+    """Free share of the section of the stack."""
+    return given["gap"] / (given["gap"] + given["thickness"])
+
+
+def _densities(case: Case, fluid: Fluid, outlet: Floats) -> tuple[Floats, Floats]:
+    """Density at the inlet and at the outlet [kg/m3]."""
+    inlet_rho = fluid.at(np.array([case.fluid.temperature])).rho
+    return inlet_rho, fluid.at(np.clip(outlet, fluid.low, fluid.high)).rho
+
+
+def _spent(
+    case: Case, fluid: Fluid, given: Settings, walked: Walked, outlet: Floats, drop: Floats
+) -> Floats:
+    """Total pressure [Pa] that the fan has to make up for: static drop and what is left of the
+    dynamic head of the ducts, whose density changes. A still plenum upstream has no head.
+    """
+    inlet_rho, outlet_rho = _densities(case, fluid, outlet)
+    porosity = np.ones_like(drop) if case.plates.ends == "none" else _porosity(given)
+    head = 0.5 * (walked.flux_density * porosity) ** 2
+    arriving = 0.0 if case.plates.feed == "plenum" else head / inlet_rho
+    leaving = 0.0 if case.plates.feed == "plenum" else head / outlet_rho
+    return np.maximum(drop + arriving - leaving, 0.0)
+
+
 def _drops(
     case: Case, fluid: Fluid, given: Settings, walked: Walked, outlet: Floats
 ) -> dict[str, Floats]:
-    """The parts of the static pressure drop [Pa], plenum to plenum."""
-    inlet_rho = fluid.at(np.array([case.fluid.temperature])).rho
-    outlet_rho = fluid.at(outlet).rho
+    """The parts of the static pressure drop [Pa], from duct to duct of the stack's own section.
+
+    Fed from a still plenum the stream has to be brought to the velocity of that duct first.
+    """
+    inlet_rho, outlet_rho = _densities(case, fluid, outlet)
     square = walked.flux_density**2
     dynamic = 0.5 * square / walked.properties.rho
     walls = 2.0 * given["length"] / given["gap"]
-    porosity = given["gap"] / (given["gap"] + given["thickness"])
-    momentum = walked.sweep.momentum_factor
+    porosity, momentum = _porosity(given), walked.sweep.momentum_factor
     ends = case.plates.ends
     recovered = passage.exit_recovery(porosity, momentum, ends)
+    entrance = passage.entrance_loss(porosity, ends)
+    if case.plates.feed == "plenum" and ends != "none":
+        entrance = entrance + porosity**2
     return {
-        "entrance_drop": 0.5 * square / inlet_rho * passage.entrance_loss(porosity, ends),
+        "entrance_drop": 0.5 * square / inlet_rho * entrance,
         "shear_drop": walked.sweep.friction * dynamic * walls,
-        "development_drop": 2.0 * dynamic * (momentum - 1.0),
+        "development_drop": square / outlet_rho * (momentum - 1.0),
         "heating_drop": square * (1.0 / outlet_rho - 1.0 / inlet_rho),
         "wire_drop": walked.sweep.wire_friction * dynamic * walls,
         "exit_drop": -0.5 * square / outlet_rho * recovered,

@@ -67,8 +67,8 @@ class SweptPlates(Problem):
             ends=case.kind == "stack" and case.plates.ends != "none",
         )
         self.laws = tuple(law for law, _ in self._ranges)
-        self.notes = words.notes(case)
         self.fluid = _fluid(case)
+        self.notes = words.notes(case, self.fluid)
 
     def evaluate(self, designs: Floats) -> Evaluation:
         """Evaluate designs of shape (n, number of variables); see `Problem.evaluate`."""
@@ -154,7 +154,9 @@ def _common(
 ) -> dict[str, Floats]:
     """The outcomes that follow in the same way for every kind."""
     sweep = walked.sweep
-    wired = np.zeros_like(walked.h) if sweep.wire is None else sweep.wire.reynolds
+    wired, margin = np.zeros_like(walked.h), np.zeros_like(walked.h)
+    if sweep.wire is not None:
+        wired, margin = sweep.wire.reynolds, sweep.wire.margin
     sides = case.plates.faces if case.kind == "plate" else 2
     one_side = outcomes["plate_area"] / sides
     capacity = walked.flux_density * walked.properties.cp
@@ -170,7 +172,7 @@ def _common(
         "turbulent_share": sweep.turbulent_share,
         "length_reynolds": walked.surface.re_l,
         "wire_reynolds": wired,
-        "wire_margin": wired / 900.0,
+        "wire_margin": margin,
     }
 
 
@@ -186,20 +188,48 @@ def _impossible(fluid: Fluid, batch: Batch) -> tuple[Floats, NDArray[np.str_]]:
     touching = np.zeros_like(batch.walked.h)
     if wire is not None:
         touching = np.maximum(wire.blockage - _TOUCHING, 0.0)
-    span = fluid.high - fluid.low
-    extremes = [batch.outcomes["hottest_wall"], batch.walked.film]
-    if "outlet_temperature" in batch.outcomes:
-        extremes.append(batch.outcomes["outlet_temperature"])
-    beyond = np.maximum(
-        np.maximum.reduce(extremes) - fluid.high - 1e-6, fluid.low - np.minimum.reduce(extremes)
-    )
-    beyond = np.maximum(beyond / span, 0.0)
+    above, below = _out_of_table(fluid, batch)
     reasons = np.full(touching.shape, "", dtype=object)
-    reasons[beyond > 0.0] = (
-        f"temperatures leave {fluid.low:.0f} to {fluid.high:.0f} K, where {fluid.name} is known"
-    )
+    reasons[below > 0.0] = _low_reason(fluid)
+    reasons[above > 0.0] = _high_reason(fluid)
     reasons[touching > 0.0] = f"the wires fill over {_TOUCHING:.0%} of the gap"
-    return touching + beyond, reasons.astype(np.str_)
+    return touching + above + below, reasons.astype(np.str_)
+
+
+def _out_of_table(fluid: Fluid, batch: Batch) -> tuple[Floats, Floats]:
+    """How far temperatures lie above and below what is known of the fluid, over its span.
+
+    Humid air under its dew point keeps the properties it has there: a surface may be wet, and a
+    caution says so.
+    """
+    hot, cold = batch.outcomes["hottest_wall"], batch.outcomes["coldest_wall"]
+    hot, cold = np.maximum(hot, batch.walked.film), np.minimum(cold, batch.walked.film)
+    if "outlet_temperature" in batch.outcomes:
+        outlet = batch.outcomes["outlet_temperature"]
+        hot, cold = np.maximum(hot, outlet), np.minimum(cold, outlet)
+    span = fluid.high - fluid.low
+    above = np.maximum(hot - fluid.high - 1e-6, 0.0) / span
+    if fluid.dew_point is not None:
+        cold = np.where(cold > 200.0, fluid.low, cold)
+    return above, np.maximum(fluid.low - cold - 1e-6, 0.0) / span
+
+
+def _high_reason(fluid: Fluid) -> str:
+    boiling = fluid.saturation_temperature
+    if fluid.phase == "liquid" and boiling is not None and fluid.high > boiling - 1.0:
+        return f"{fluid.name} boils at {boiling - 273.15:.1f} degC: a wall is hotter"
+    known = f"{fluid.high - 273.15:.0f} degC, up to where {fluid.name} is known"
+    return f"a temperature is over {known}"
+
+
+def _low_reason(fluid: Fluid) -> str:
+    freezing, condensing = fluid.freezing_point, fluid.saturation_temperature
+    if freezing is not None and fluid.low < freezing + 1.0:
+        return f"{fluid.name} freezes at {freezing - 273.15:.1f} degC: a wall is colder"
+    if fluid.phase == "gas" and condensing is not None and fluid.low < condensing + 1.0:
+        return f"{fluid.name} condenses at {condensing - 273.15:.1f} degC: a wall is colder"
+    known = f"{fluid.low - 273.15:.0f} degC, down to where {fluid.name} is known"
+    return f"a temperature is under {known}"
 
 
 def _fluid(case: Case) -> Fluid:

@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 
 from problems.case import Case
 from problems.convection import transition
+from problems.convection.fluids import Fluid
 from problems.convection.passage import BAND_HIGH, BAND_LOW
 from problems.kinds import plate
 from problems.kinds.laws import Walk
@@ -23,6 +24,11 @@ from problems.tables import Trip
 if TYPE_CHECKING:
     from problems.kinds.statement import Batch
 
+_FEED = {
+    "duct": "It counts from duct to duct of the stack's own section, and the fan power is on the "
+    "loss of total pressure; feed from a still plenum costs the head of that duct more.",
+    "plenum": "The stack is fed from a still plenum and blows into one.",
+}
 PLAIN, TRIPPED, IDLE = "plain", "tripped", "idle wire"
 
 
@@ -35,7 +41,7 @@ def groups(settings: Mapping[str, Floats], walk: Walk) -> NDArray[np.str_]:
     return np.where(wired & works, TRIPPED, np.where(wired, IDLE, PLAIN))
 
 
-def notes(case: Case) -> tuple[str, ...]:
+def notes(case: Case, fluid: Fluid) -> tuple[str, ...]:
     """What the reader must know about the case as a whole."""
     level, natural = free_stream_turbulence(case)
     said = []
@@ -56,14 +62,18 @@ def notes(case: Case) -> tuple[str, ...]:
     else:
         said.append(
             f"A gap keeps up turbulence from Re_D {BAND_LOW:.0f} (not at all) to {BAND_HIGH:.0f} "
-            "(fully), on twice the gap; below, a trip wire costs drag and gives nothing."
+            "(fully), on twice the gap; below, a trip wire costs drag and is given no credit."
         )
         said.append(
-            "The velocity is the mean in the gap at inlet density. The pressure drop is static, "
-            "from plenum to plenum, and more than wall shear: the core speeds up, the ends lose."
+            "The velocity is the mean in the gap at inlet density. The pressure drop is static and "
+            "more than wall shear: the core speeds up, the ends lose. " + _FEED[case.plates.feed]
         )
     if case.trip is not None:
         said.append(_trip_note(case, case.trip))
+    if fluid.phase == "gas":
+        said.append("Radiation is not counted; at low velocities it can be a third of the heat.")
+    elif fluid.saturation_temperature is None:
+        said.append("Boiling and flash point of this liquid are not known here: check both.")
     return tuple(said)
 
 
@@ -133,7 +143,7 @@ def _wire(batch: Batch, length: float, metre: float) -> list[str]:
     )
     if float(sweep.sustains[0]) == 0.0:
         return [
-            f"{head}. The gap cannot keep up turbulence: it costs drag and gives nothing.{cost}"
+            f"{head}. The gap cannot keep up turbulence: it costs drag, no credit is given.{cost}"
         ]
     behind = float(sweep.behind_wires[0])
     row = "" if len(sweep.wires) == 1 else f" the last of {len(sweep.wires)}"

@@ -201,7 +201,7 @@ def test_what_was_assumed_is_told_with_its_reason():
     assert assumed["fluid.pressure"] == "101.3 kPa (standard atmosphere)"
     assert dict(parse_case(good("mountain"), "m").assumed)["fluid.pressure"].endswith("at 1000 m)")
     stack = dict(parse_case(good("stack"), "stack").assumed)
-    assert stack.keys() == {"plates.roughness", "plates.material_density"}
+    assert stack.keys() == {"plates.feed", "plates.roughness", "plates.material_density"}
 
 
 # Values set by hand

@@ -84,7 +84,8 @@ def test_wire_too_small_to_trip_moves_onset_upstream_but_not_past_itself():
     assert_allclose(onset.re_x[0], 1.35e6, rtol=1e-9)
     assert np.all(np.diff(onset.re_x) <= 0.0)
     assert np.all(onset.re_x >= 1e5)
-    assert onset.re_x[-1] < 1.1e5
+    # Dryden 1958 at the end of its range, k/delta* 0.8: like 2.25 % turbulence, Re_x 1.6e5
+    assert_allclose(onset.re_x[-1], transition.onset_re_x(np.array([2.3])), rtol=0.05)
 
 
 def test_wire_behind_natural_onset_changes_nothing():

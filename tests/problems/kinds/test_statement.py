@@ -9,6 +9,8 @@ import pytest
 from numpy.testing import assert_allclose
 
 from problems import build, load_case, ready_made
+from problems.case import parse_case
+from problems.kinds import cautions
 from problems.problem import Problem
 
 NAMES = tuple(entry.name for entry in ready_made())
@@ -169,3 +171,111 @@ def test_whole_number_of_plates_keeps_the_gap():
     built = found[0].evaluate(found[1])
     assert built.settings["count"][0] == np.round(stated.evaluate(design).settings["count"][0])
     assert_allclose(built.settings["gap"], stated.evaluate(design).settings["gap"])
+
+
+_COOLED = """
+title = "Cold plates in a warm stream"
+kind = "{kind}"
+[fluid]
+name = "{fluid}"
+temperature = "{inlet} degC"
+turbulence = "3 %"
+{humidity}
+[plates]
+width = "0.5 m"
+{height}
+length = {length}
+{gap}
+surface = {{ {surface} }}
+[flow]
+velocity = ["0.5 m/s", "8 m/s"]
+[aims]
+most = ["mean_h"]
+"""
+
+
+def cooled(
+    kind: str,
+    surface: str,
+    fluid: str = "air",
+    inlet: float = 25.0,
+    humidity: str = "",
+    length: str = '["0.1 m", "1 m"]',
+):
+    stack = kind == "stack"
+    height = 'height = "0.3 m"' if stack else ""
+    gap = 'gap = ["3 mm", "20 mm"]' if stack else ""
+    text = _COOLED.format(
+        kind=kind,
+        fluid=fluid,
+        inlet=inlet,
+        humidity=humidity,
+        surface=surface,
+        length=length,
+        height=height,
+        gap=gap,
+    )
+    return build(parse_case(text, "cooled"))
+
+
+@pytest.mark.parametrize("kind", ["plate", "stack"])
+def test_wall_under_a_cooling_flux_is_as_cold_as_its_layer_makes_it(kind):
+    stated = cooled(kind, 'flux = "-150 W/m2"')
+    got = stated.evaluate(designs(stated, 300))
+    assert np.all(got.outcomes["hottest_wall"] == 298.15)
+    assert np.all(got.outcomes["coldest_wall"] < 298.15 - 150.0 / got.outcomes["mean_h"])
+    warm = cooled(kind, 'flux = "150 W/m2"').evaluate(designs(stated, 300))
+    assert_allclose(
+        298.15 - got.outcomes["coldest_wall"], warm.outcomes["hottest_wall"] - 298.15, rtol=0.25
+    )
+
+
+def test_wall_colder_than_the_fluid_can_be_is_impossible_and_says_why():
+    stated = cooled("stack", 'flux = "-90 kW/m2"', fluid="water")
+    got = stated.evaluate(designs(stated, 300))
+    frozen = got.outcomes["coldest_wall"] < 273.15
+    assert frozen.any()
+    assert not np.any(got.possible & frozen)
+    assert "freezes" in got.reasons[frozen][0]
+
+
+def test_wall_hotter_than_boiling_is_impossible_and_says_why():
+    stated = cooled("stack", 'temperature = "110 degC"', fluid="water")
+    got = stated.evaluate(designs(stated, 20))
+    assert not got.possible.any()
+    assert "boils at 100.0 degC" in got.reasons[0]
+
+
+def test_surface_under_the_dew_point_is_possible_and_cautioned():
+    stated = cooled("stack", 'temperature = "8 degC"', "humid air", 25.0, 'humidity = "60 %"')
+    got = stated.evaluate(designs(stated, 50))
+    assert got.possible.all()
+    assert got.cautions[cautions.WET].all()
+
+
+def test_buoyancy_is_seen_under_a_cooling_flux():
+    stated = cooled("plate", 'flux = "-150 W/m2"')
+    slow = np.array([[1.0, 0.5]])
+    assert stated.evaluate(slow).cautions[cautions.BUOYANT].all()
+
+
+def test_fan_power_stays_positive_where_cooled_gas_recovers_static_pressure():
+    stated = cooled("stack", 'temperature = "30 degC"', inlet=800.0, length='["0.02 m", "0.4 m"]')
+    got = stated.evaluate(designs(stated, 4000))
+    assert np.any(got.outcomes["pressure_drop"] < 0.2 * got.outcomes["shear_drop"])
+    assert np.all(got.outcomes["fan_power"] > 0.0)
+
+
+def test_momentum_of_the_passage_balances():
+    # pressure force = walls and wires + momentum leaving at outlet density - momentum arriving
+    stated = problem("hulling-stack")
+    got = stated.evaluate(designs(stated, 200))
+    out, given = got.outcomes, got.settings
+    walked = stated.batch(designs(stated, 200)).walked
+    inside = sum(out[f"{part}_drop"] for part in ("shear", "wire", "development", "heating"))
+    rho_in = stated.fluid.at(np.array([298.15])).rho
+    rho_out = stated.fluid.at(out["outlet_temperature"]).rho
+    square = (rho_in * given["velocity"]) ** 2
+    leaving = walked.sweep.momentum_factor * square / rho_out - square / rho_in
+    section = given["gap"] * given["width"] * given["count"]
+    assert_allclose(inside * section, out["drag"] + leaving * section, rtol=1e-9)
