@@ -121,7 +121,7 @@ def variables_picture(front: Front, problem: Problem, figure: Figure | None = No
             lowest = place + 2 >= len(rows)
             left = 18.0 + 84.0 * (place % 2)
             bottom = 11.0 + 40.0 * (tall - 1 - place // 2)
-            ax = ink.panel(figure, left, bottom, 64.0, 34.0)
+            ax = ink.panel(figure, left, bottom, 61.0, 34.0)
             x = _scaled(ax, "x", front, problem, name)
             _along(ax, front, problem, quantity, x)
             if not lowest:
