@@ -22,7 +22,7 @@ from problems.convection.sweep import Surface, Sweep, wire_steps
 
 Floats = NDArray[np.float64]
 
-CELLS, STATIONS = 120, 1000  # within 0.5 % of the limit of fine grids
+CELLS, STATIONS = 120, 400  # within 0.2 % of the limit of fine grids
 _SMOOTH = 100.0  # U k_s/nu up to which a wall is smooth (from memory)
 _FIRST_PLUS = 0.35  # y+ to which the first cell reaches, at Pr 1
 _START_CELLS = 12.0  # first cells to one thermal layer at the start
