@@ -149,10 +149,11 @@ def _one_of_each_name(sheets: Sequence[Sheet]) -> None:
 
 def _fans(sheet: Sheet) -> list[Fan | None]:
     """Every fan of a sheet, faults noted; None for a fan that cannot be used."""
-    sheet.need(["fan", "speed", "density", "flow"] if sheet.rows else [])
+    there = sheet.has(("fan", "speed", "density", "flow"))
     pressure, power = _one_of(sheet, _PRESSURES), _one_of(sheet, _POWERS)
-    if not pressure or not power or not {"fan", "speed", "density", "flow"} <= {*sheet.headers}:
+    if not there or not pressure or not power:
         return []
+    sheet.full(("fan", "flow", pressure, power))
     groups: dict[str, list[Row]] = {}
     for row in sheet.rows:
         if row.text("fan"):
@@ -164,7 +165,6 @@ def _one_of(sheet: Sheet, names: Sequence[str]) -> str | None:
     """The one column of `names` that the sheet has; None and a fault for none or several."""
     found = [name for name in names if name in sheet.headers]
     if len(found) == 1:
-        sheet.need(found)
         return found[0]
     given = " and ".join(f'"{sheet.headers[name]}"' for name in found) or "missing"
     sheet.fault(f"column of {names[0].split()[-1]}: {given} -- exactly one of: {', '.join(names)}")
@@ -179,6 +179,9 @@ def _fan(sheet: Sheet, name: str, rows: list[Row], pressure: str, power: str) ->
         return any(line in lines for line, _ in sheet.faults)
 
     facts = {column.name: _same(sheet, column.name, rows) for column in OF_FAN}
+    for needed in ("speed", "density"):
+        if not any(row.written.get(needed) for row in rows):
+            sheet.wrong(rows[0], needed, "a value in the first row of each fan at least")
     if len(rows) < LEAST_POINTS:
         sheet.fault(f"fan {name}: {len(rows)} points -- at least {LEAST_POINTS}", rows[0].line)
     sheet.rising("flow", said, rows)

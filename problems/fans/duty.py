@@ -25,7 +25,7 @@ def variable_speed(
     density: ArrayLike,
     drive: Drive = VARIABLE,
 ) -> Duty:
-    """The speed at which each arrangement `row` passes through the wanted point, and its duty there.
+    """The speed at which each arrangement `row` passes through the wanted point; its duty there.
 
     `flow` [m3/s] at the fan, static `pressure` [Pa] and `density` [kg/m3] at the fan broadcast
     against `row`: `curves.every` (A, 1) against (n,) gives (A, n), a row of shape (n,) gives (n,).
@@ -167,7 +167,7 @@ def _duty(
     short: Floats,
     second: Bools,
 ) -> Duty:
-    """The duty of fans that work at `flow` of their tested curve, `faster` and `denser` than that."""
+    """The duty at `flow` of the tested curve, run `faster` and in `denser` air than that."""
     tested = curves.pressure(row, flow)
     delivered, pressure, taken = affinity(
         flow, tested, curves.power(row, flow), faster, np.broadcast_to(denser, flow.shape)

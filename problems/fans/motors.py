@@ -66,7 +66,9 @@ def ordinary_motor() -> Motor:
 def _motor(sheet: Sheet) -> Motor:
     from scipy.interpolate import PchipInterpolator
 
-    sheet.need([column.name for column in COLUMNS])
+    names = [column.name for column in COLUMNS]
+    if sheet.has(names):
+        sheet.full(names)
     power, efficiency = (sheet.numbers(column.name) for column in COLUMNS)
     sheet.rising("shaft power", "")
     if len(sheet.rows) < 2:

@@ -11,65 +11,79 @@ import numpy as np
 
 from problems.problem import Floats
 
-_ROUNDS = 60  # of Newton's steps; a dozen do, the rest is for curves with corners
+_ROUNDS = 80  # a dozen do, the rest is for curves with corners
 _CLOSE = 1e-13  # last step over the width of the bracket
 
 
 def falling_cubic_root(c0: Floats, c1: Floats, c2: Floats, c3: Floats, width: Floats) -> Floats:
-    """Root between 0 and `width` of a cubic that falls there; the nearer end where it has none.
+    """Root between 0 and `width` of cubics that fall there; the nearer end where there is none.
 
-    Newton's steps from the secant, halving the bracket wherever one would leave it.
+    Newton's steps from the secant, halving the bracket wherever one would leave it; work stops on
+    what is found. All of one shape.
     """
     at_end = ((c3 * width + c2) * width + c1) * width + c0
-    low, high = np.zeros_like(width), width
-    inside = (c0 > 0.0) & (at_end < 0.0)
-    x = np.where(
-        inside, width * c0 / np.where(inside, c0 - at_end, 1.0), np.where(c0 > 0.0, width, 0.0)
-    )
-    with np.errstate(divide="ignore", invalid="ignore"):
-        for _ in range(_ROUNDS):
+    root = np.where(c0 > 0.0, width, 0.0)
+    left = np.flatnonzero((c0 > 0.0) & (at_end < 0.0))
+    c0, c1, c2, c3, high = (x.ravel().take(left) for x in (c0, c1, c2, c3, width))
+    x = high * c0 / (c0 - at_end.ravel().take(left))
+    low, close = np.zeros_like(high), _CLOSE * high
+    found = root.ravel()
+    for turn in range(_ROUNDS):
+        with np.errstate(divide="ignore", invalid="ignore"):
             value = ((c3 * x + c2) * x + c1) * x + c0
             step = x - value / ((3.0 * c3 * x + 2.0 * c2) * x + c1)
-            right = value > 0.0
-            low, high = np.where(right, x, low), np.where(right, high, x)
-            step = np.where((step >= low) & (step <= high), step, 0.5 * (low + high))
-            step = np.where(inside, step, x)
-            done = np.abs(step - x) <= _CLOSE * width
-            x = step
-            if done.all():
+        right = value > 0.0
+        low, high = np.where(right, x, low), np.where(right, high, x)
+        step = np.where((step >= low) & (step <= high), step, 0.5 * (low + high))
+        moving = np.abs(step - x) > close
+        x = step
+        if turn % 3 == 2 or turn == _ROUNDS - 1:
+            found[left] = x
+            still = np.flatnonzero(moving)
+            if not still.size:
                 break
-    return x
+            left, x, low, high, close, c0, c1, c2, c3 = (
+                y.take(still) for y in (left, x, low, high, close, c0, c1, c2, c3)
+            )
+    return found.reshape(root.shape)
 
 
 def falling_root(function: Callable[[Floats], Floats], low: Floats, high: Floats) -> Floats:
     """Where `function`, falling in each element, passes 0 between `low` and `high`, any shape.
 
-    The nearer end where it does not. False position after Anderson and Björck 1973, with a halving
-    wherever three rounds have not halved the bracket.
+    The nearer end where it does not. Inverse quadratic steps where they are safe, halving where
+    not: Chandrupatla 1997, Adv. Eng. Softw. 28, 145-149 (from memory).
     """
     f_low, f_high = function(low), function(high)
-    none, all_below = f_high >= 0.0, f_low <= 0.0
-    end = np.where(none, high, low)
-    fixed = none | all_below
-    before, x = high - low, end
-    side = np.zeros(low.shape, dtype=np.int8)
-    for turn in range(_ROUNDS * 2):
-        gap = np.where(fixed, 1.0, f_low - f_high)
-        new = low + (high - low) * np.where(fixed, 0.5, f_low / gap)
-        if turn % 3 == 2:
-            new = np.where(high - low > 0.5 * before, 0.5 * (low + high), new)
-            before = high - low
-        value = function(np.where(fixed, end, new))
-        right = value > 0.0
-        old = np.where(right, f_low, f_high)
-        shrink = 1.0 - value / np.where(old == 0.0, 1.0, old)
-        shrink = np.where(shrink > 0.0, shrink, 0.5)
-        f_high = np.where(right, np.where(side == 1, f_high * shrink, f_high), value)
-        f_low = np.where(right, value, np.where(side == -1, f_low * shrink, f_low))
-        low, high = np.where(right, new, low), np.where(right, high, new)
-        side = np.where(right, 1, -1).astype(np.int8)
-        moved, x = np.abs(new - x), new
-        near = (moved <= 1e-12 * high) | (value == 0.0)
-        if np.all(fixed | near):
+    beyond, below = f_high >= 0.0, f_low <= 0.0
+    fixed, end = beyond | below, np.where(beyond, high, low)
+    # a: newest, b: on the other side of the root, c: the one before
+    a, fa, b, fb = high, f_high, low, f_low
+    c, fc, t = a, fa, np.full(np.shape(low), 0.5)
+    done = fixed
+    for _ in range(_ROUNDS):
+        x = np.where(done, a, a + t * (b - a))
+        fx = function(np.where(fixed, end, x))
+        same = (fx > 0.0) == (fa > 0.0)
+        c, fc = np.where(same, a, b), np.where(same, fa, fb)
+        b, fb = np.where(same, b, a), np.where(same, fb, fa)
+        a, fa = x, fx
+        near = 2.0 * _CLOSE * np.maximum(np.abs(a), np.abs(b))
+        done = done | (fa == 0.0) | (np.abs(b - a) <= 2.0 * near)
+        if done.all():
             break
-    return np.where(fixed, end, x)
+        t = _next_step(a, b, c, fa, fb, fc)
+        with np.errstate(divide="ignore", invalid="ignore"):
+            least = np.where(done, 0.5, near / np.abs(b - a))
+        t = np.clip(t, least, 1.0 - least)
+    return np.where(fixed, end, a)
+
+
+def _next_step(a: Floats, b: Floats, c: Floats, fa: Floats, fb: Floats, fc: Floats) -> Floats:
+    """Share of the way from `a` to `b` at which to look next."""
+    with np.errstate(all="ignore"):
+        xi, phi = (a - b) / (c - b), (fa - fb) / (fc - fb)
+        curved = fa / (fb - fa) * fc / (fb - fc)
+        curved = curved + (c - a) / (b - a) * fa / (fc - fa) * fb / (fc - fb)
+        safe = (phi**2 < xi) & ((1.0 - phi) ** 2 < 1.0 - xi) & np.isfinite(curved)
+    return np.where(safe, curved, 0.5)

@@ -92,12 +92,16 @@ class Sheet:
         shown = row.written.get(name) or "empty"
         self.fault(f'column "{self.headers.get(name, name)}": {shown} -- {allowed}', row.line)
 
-    def need(self, names: Iterable[str]) -> None:
-        """Note the columns that are not there, and the rows in which they are empty."""
+    def has(self, names: Iterable[str]) -> bool:
+        """Whether all the columns are there; those that are not are noted."""
+        lacking = [name for name in names if name not in self.headers]
+        for name in lacking:
+            self.fault(f'column "{name}": missing -- a column of this name with its unit')
+        return not lacking
+
+    def full(self, names: Iterable[str]) -> None:
+        """Note every row in which one of the columns is empty."""
         for name in names:
-            if name not in self.headers:
-                self.fault(f'column "{name}": missing -- a column of this name with its unit')
-                continue
             for row in self.rows:
                 if not row.written.get(name):
                     self.wrong(row, name, "a value in every row")
