@@ -6,6 +6,7 @@ value and what is allowed. What can be done with the fans is for `choice`.
 
 from __future__ import annotations
 
+import difflib
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
@@ -15,7 +16,6 @@ from pathlib import Path
 from problems import CaseError
 from problems.fans.curves import Fan, peak_of
 from problems.fans.sheet import Column, Row, Sheet, read_sheet
-from problems.rules import nearest
 
 LEAST_POINTS = 4
 # where a data sheet gives no limits: never above the tested speed, and not below 30 % of it, where
@@ -94,7 +94,8 @@ class Catalogue:
         """The place of the fan called `name`. Raises CaseError naming the nearest."""
         names = [fan.name for fan in self.fans]
         if name not in names:
-            raise CaseError(f"fan {name}: {nearest(name, names)}")
+            near = difflib.get_close_matches(name, names, n=1) or names
+            raise CaseError(f"fan {name}: unknown; the nearest: {', '.join(near)}")
         return names.index(name)
 
 
@@ -208,7 +209,7 @@ def _fan(sheet: Sheet, name: str, rows: list[Row], pressure: str, power: str) ->
 
 def _same(sheet: Sheet, name: str, rows: Sequence[Row]) -> float | None:
     """What a fan's rows say in a column, empty cells passed over; a fault where they differ."""
-    said = [row for row in rows if row.written.get(name)]
+    said = [row for row in rows if name in row.values]
     for row in said[1:]:
         if row.values.get(name) != said[0].values.get(name):
             says = f"{said[0].written[name]} as in row {said[0].line}: one value for each fan"

@@ -42,9 +42,9 @@ def falling_cubic_root(c0: Floats, c1: Floats, c2: Floats, c3: Floats, width: Fl
             still = np.flatnonzero(moving)
             if not still.size:
                 break
-            left, x, low, high, close, c0, c1, c2, c3 = (
-                y.take(still) for y in (left, x, low, high, close, c0, c1, c2, c3)
-            )
+            left, close = left.take(still), close.take(still)
+            x, low, high = x.take(still), low.take(still), high.take(still)
+            c0, c1, c2, c3 = (term.take(still) for term in (c0, c1, c2, c3))
     return found.reshape(root.shape)
 
 

@@ -77,6 +77,7 @@ class Sheet:
     """A table as read, with the faults found so far."""
 
     where: str
+    width: int = 0
     headers: dict[str, str] = field(default_factory=dict)
     units: dict[str, str] = field(default_factory=dict)
     rows: list[Row] = field(default_factory=list)
@@ -154,6 +155,7 @@ def read_sheet(path: str | Path, columns: Sequence[Column], text: str | None = N
         raise CaseError(f"{path}: empty -- a line of headers, then one row for each point")
     delimiter = max(_DELIMITERS, key=kept[0][1].count)
     cells = [(i, next(csv.reader([line], delimiter=delimiter))) for i, line in kept]
+    sheet.width = len(cells[0][1])
     places = _headers(sheet, [cell.strip() for cell in cells[0][1]], columns)
     for number, row in cells[1:]:
         sheet.rows.append(_row(sheet, number, [cell.strip() for cell in row], places, delimiter))
@@ -228,10 +230,8 @@ def _factor(unit: str, si: str) -> float:
 def _row(sheet: Sheet, line: int, cells: Sequence[str], places: Sequence[Place], by: str) -> Row:
     """One line, faults noted for cells that cannot be used."""
     row = Row(line, {}, {})
-    if len(cells) > 1 + max((place for place, _, _ in places), default=-1) and any(
-        cells[len(sheet.headers) :]
-    ):
-        sheet.fault(f"{len(cells)} cells -- {len(sheet.headers)}, one for each header", line)
+    if any(cells[sheet.width :]):
+        sheet.fault(f"cells: {len(cells)} -- {sheet.width}, one for each header", line)
     for place, column, factor in places:
         text = cells[place] if place < len(cells) else ""
         row.written[column.name] = text

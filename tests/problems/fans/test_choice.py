@@ -15,7 +15,7 @@ from problems.fans.curves import curves
 from problems.fans.duty import fixed_speed, variable_speed
 from problems.fans.systems import SampledSystem, System
 from problems.fans.terms import CAUTIONS, Drive, Reason
-from tests.problems.fans.made import dipped_fan, quadratic_fan, random_fans
+from tests.problems.fans.made import dipped_fan, quadratic_fan
 from tests.published_data import published
 
 OF_FANS = published("fans").set_index("quantity")
