@@ -279,4 +279,6 @@ def conductivity(cells: Cells, velocity: Floats, pr: Floats, eddy: Floats) -> Fl
     if not np.any(eddy):
         return np.broadcast_to(1.0 / pr, eddy.shape)
     shear = np.maximum(cells.wall_slope(velocity), 1e-12)[:, None]
-    return np.asarray(1.0 / pr + eddy / turbulent_prandtl(cells.faces[:, 1:-1] * np.sqrt(shear), pr))
+    return np.asarray(
+        1.0 / pr + eddy / turbulent_prandtl(cells.faces[:, 1:-1] * np.sqrt(shear), pr)
+    )

@@ -34,10 +34,10 @@ class Marched:
     """What the march gives at m stations of n designs; on nominal velocity, as in `Sweep`.
 
     Along the plate (n, m): `re_x`; local `cf` and `st` (on wall less bulk temperature, less the
-    stream's on one plate); `re_theta` and `re_displacement`, thicknesses of one wall's layer in
-    nu/U; `core` velocity outside the layer or in the middle of the gap; `kd` momentum factor (1
-    on one plate); `drop` of pressure from the inlet, in rho U^2/2, wires included; `gamma` the
-    share of turbulence in force. A wire's place occurs twice, ahead of it and behind. `length`,
+    stream's on one plate); `re_theta` and `re_displacement` on the velocity outside the layer; `core` velocity outside the layer or in the middle of the gap; `kd` momentum factor (1
+    on one plate); `drop` of pressure from the inlet, in rho U^2/2, wires included; `bulk`
+    temperature, wall 0 and inlet 1, or inlet 0 in units of q/(rho cp U); `gamma` the share of
+    turbulence in force. A wire's place occurs twice, ahead of it and behind. `length`,
     `drag` of the wires in rho U nu and `converged` are (n,).
     """
 
@@ -49,6 +49,7 @@ class Marched:
     core: Floats
     kd: Floats
     drop: Floats
+    bulk: Floats
     gamma: Floats
     length: Floats
     drag: Floats
@@ -118,9 +119,7 @@ class _March:
             developed = passage.developed_friction(surface.re_d, np.zeros_like(full))
             cf = np.maximum(cf, developed)
         plus = np.sqrt(0.5 * cf) * full * np.cbrt(np.maximum(surface.pr, 1.0))
-        turbulent = np.where(
-            self._onset.re_x < surface.re_l, _FIRST_PLUS / plus, 1.0
-        )
+        turbulent = np.where(self._onset.re_x < surface.re_l, _FIRST_PLUS / plus, 1.0)
         return np.minimum(turbulent, 3.0 * thermal / (_START_CELLS * across))
 
     def along(self, stations: int) -> Marched:
@@ -207,16 +206,26 @@ class _March:
             st = cells.wall_slope(state.temperature) / (medium.pr * bulk)
         cf = 2.0 * cells.wall_slope(state.velocity)
         drop = -2.0 * state.pressure
-        row = (state.x, cf, st, theta, displacement, core, kd, drop, state.gamma)
+        row = (state.x, cf, st, theta, displacement, core, kd, drop, bulk, state.gamma)
         self._rows.append(row)
 
     def _collect(self, state: State) -> Marched:
-        columns = [np.stack(column, axis=1) for column in zip(*self._rows, strict=True)]
-        drag = sum(self._drags, np.zeros_like(state.x))
+        re_x, cf, st, theta, displacement, core, kd, drop, bulk, gamma = (
+            np.stack(column, axis=1) for column in zip(*self._rows, strict=True)
+        )
         return Marched(
-            *columns,
+            re_x=re_x,
+            cf=cf,
+            st=st,
+            re_theta=theta * core,
+            re_displacement=displacement * core,
+            core=core,
+            kd=kd,
+            drop=drop,
+            bulk=bulk,
+            gamma=gamma,
             length=self._surface.re_l,
-            drag=drag,
+            drag=sum(self._drags, np.zeros_like(state.x)),
             flux=self._medium.flux,
             converged=state.converged,
         )

@@ -35,9 +35,7 @@ def _on_plate(medium: Medium, state: State, drag: Floats) -> State:
     theta = np.sum(state.cells.width * state.velocity * (1.0 - state.velocity), axis=1)
     scale = 1.0 + drag / theta
     cells, stream = state.cells.scaled(scale), state.stream * scale[:, None]
-    return replace(
-        state, cells=cells, stream=stream, temperature=_carried(medium, state, stream)
-    )
+    return replace(state, cells=cells, stream=stream, temperature=_carried(medium, state, stream))
 
 
 def _carried(medium: Medium, state: State, stream: Floats) -> Floats:
@@ -61,7 +59,7 @@ def _in_gap(medium: Medium, state: State, half_gap: Floats, drag: Floats) -> Sta
     gap = _Gap(state.cells, state.velocity, state.stream, half_gap)
     most = np.maximum(half_gap / gap.fullest, 1.0)
     scale = gap.stretch(drag, most)
-    core, stream, velocity, momentum = gap.stretched(scale)
+    stream, velocity, momentum = gap.stretched(scale)
     loss = (drag + momentum - gap.momentum[:, -1]) / half_gap
     struck = drag > 0.0
     moved = replace(
@@ -93,9 +91,7 @@ class _Gap:
     def _faster(self, scale: Floats) -> Floats:
         """Core velocity over that before, from the mass balance."""
         seen = (self._half_gap / scale)[:, None]
-        return np.asarray(
-            self._half_gap / (scale * self._up_to(seen, self._stream, 1)[:, 0])
-        )
+        return np.asarray(self._half_gap / (scale * self._up_to(seen, self._stream, 1)[:, 0]))
 
     def _drag(self, scale: Floats) -> Floats:
         """Drag that stretching by `scale` (n,) stands for."""
@@ -114,11 +110,11 @@ class _Gap:
             low, high = np.where(short, middle, low), np.where(short, high, middle)
         return np.exp(high)
 
-    def stretched(self, scale: Floats) -> tuple[Floats, Floats, Floats, Floats]:
-        """Core velocity (n,), stream function, cell velocities and momentum (n,) behind."""
+    def stretched(self, scale: Floats) -> tuple[Floats, Floats, Floats]:
+        """Stream function, cell velocities and momentum (n,) behind."""
         faster = self._faster(scale)
         column = (faster * scale)[:, None]
         stream = column * self._up_to(self._cells.faces / scale[:, None], self._stream, 1)
         velocity = np.diff(stream) / self._cells.width
         momentum = np.sum(self._cells.width * velocity**2, axis=1)
-        return self.core * faster, stream, velocity, momentum
+        return stream, velocity, momentum
