@@ -33,12 +33,13 @@ _EDGE = 16.0  # outer edge of the cells on one plate, in momentum thicknesses
 class Marched:
     """What the march gives at m stations of n designs; on nominal velocity, as in `Sweep`.
 
-    Along the plate (n, m): `re_x`; local `cf` and `st` (on wall less bulk temperature, less the
-    stream's on one plate); `re_theta` and `re_displacement` on the velocity outside the layer; `core` velocity outside the layer or in the middle of the gap; `kd` momentum factor (1
+    Along the plate (n, m): `re_x`; local `cf` and `st` (on wall less bulk temperature, on one
+    plate less the stream's); `re_theta` and `re_displacement` of one wall's layer on the velocity
+    outside it; `core` that velocity, or the one in the middle of the gap; `kd` momentum factor (1
     on one plate); `drop` of pressure from the inlet, in rho U^2/2, wires included; `bulk`
     temperature, wall 0 and inlet 1, or inlet 0 in units of q/(rho cp U); `gamma` the share of
-    turbulence in force. A wire's place occurs twice, ahead of it and behind. `length`,
-    `drag` of the wires in rho U nu and `converged` are (n,).
+    turbulence in force. A wire's place occurs twice, ahead of it and behind. `length`, `drag` of
+    the wires in rho U nu and `converged` are (n,).
     """
 
     re_x: Floats

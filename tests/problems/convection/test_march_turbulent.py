@@ -48,7 +48,7 @@ def test_laminar_passage_meets_the_published_table():
     table = published("parallel_plates_entrance")
     found = _march(Surface(np.array([1e5]), PR[:1], LAMINAR, 1.0, re_d=np.array([1000.0])))
     for name, values in (("local_shear", 1e3 * found.cf), ("momentum_factor", found.kd)):
-        rows = table.query("quantity == @name and 1e-4 <= at <= 0.1")
+        rows = table[(table["quantity"] == name) & table["at"].between(1e-4, 0.1)]
         x = rows["at"].to_numpy() * 1e6
         assert_allclose(_at(found, values, x), rows["value"], rtol=0.003)
     rows = table.query("quantity == 'nusselt_local_temperature' and pr == 0.7 and at <= 0.1")
