@@ -103,6 +103,7 @@ def _parser() -> argparse.ArgumentParser:
     _add_check(commands)
     _add_point(commands)
     _add_search(commands)
+    _add_trips(commands)
     return parser
 
 
@@ -130,13 +131,7 @@ def _add_point(commands: Any) -> None:
         "middle of its range.",
     )
     _add_case(point)
-    point.add_argument(
-        "--set",
-        metavar="KEY=VALUE",
-        action="append",
-        default=[],
-        help='a value in place of the case\'s, such as length=0.3 or gap="8 mm"; may be repeated',
-    )
+    _add_set(point)
     point.add_argument(
         "--out", metavar="DIR", type=Path, help="where the picture goes (results/<case>-point)"
     )
@@ -150,15 +145,52 @@ def _add_search(commands: Any) -> None:
     search = commands.add_parser("search", help=text, description=f"{text[0].upper()}{text[1:]}.")
     _add_case(search)
     search.add_argument("--out", metavar="DIR", type=Path, help="the run folder (results/<case>)")
-    search.add_argument(
-        "--seed", metavar="N", type=_whole_from(0), default=1, help="same seed, same front (1)"
-    )
+    _add_seed(search, "same seed, same front (1)")
     search.add_argument(
         "--evaluations", metavar="N", type=_whole_from(1), help="at most so many designs evaluated"
     )
     search.add_argument("--resume", action="store_true", help="go on with an unfinished search")
     search.add_argument("--force", action="store_true", help="replace the run that is there")
     _finish(search, _search)
+
+
+def _add_trips(commands: Any) -> None:
+    text = "does forcing transition pay here, where, and with which wire"
+    trips = commands.add_parser(
+        "trips",
+        help=text,
+        description=f"{text[0].upper()}{text[1:]}: plain plates, one wire to three and grit "
+        "compared on equal terms, with a map, the wire itself and what the uncertain onset does.",
+    )
+    _add_case(trips)
+    _add_set(trips)
+    trips.add_argument(
+        "--turbulence",
+        metavar="LOW..HIGH",
+        type=_levels,
+        help="free-stream turbulence that may occur, such as 0.5%%..4%% (else the onset is taken "
+        "as uncertain by a factor 1.5 either way)",
+    )
+    _add_seed(trips, "same seed, same answer (1)")
+    trips.add_argument(
+        "--out", metavar="DIR", type=Path, help="where table and pictures go (results/<case>-trips)"
+    )
+    trips.add_argument("--force", action="store_true", help="replace what is there")
+    _finish(trips, _trips)
+
+
+def _add_set(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument(
+        "--set",
+        metavar="KEY=VALUE",
+        action="append",
+        default=[],
+        help='a value in place of the case\'s, such as length=0.3 or gap="8 mm"; may be repeated',
+    )
+
+
+def _add_seed(parser: argparse.ArgumentParser, text: str) -> None:
+    parser.add_argument("--seed", metavar="N", type=_whole_from(0), default=1, help=text)
 
 
 def _add_case(parser: argparse.ArgumentParser) -> None:
@@ -181,6 +213,21 @@ def _whole_from(least: int) -> Callable[[str], int]:
         return number
 
     return read
+
+
+def _levels(text: str) -> tuple[float, float]:
+    """The ends of a band of turbulence levels, in percent."""
+    from problems.units import QuantityError, to_si
+
+    try:
+        low, high = (100.0 * to_si(end.strip(), "1") for end in text.split(".."))
+    except (QuantityError, ValueError):
+        low, high = 0.0, 0.0
+    if not 0.01 <= low < high <= 20.0:
+        raise argparse.ArgumentTypeError(
+            f"{text!r} -- two levels from 0.01 % to 20 %, the lower first, such as 0.5%..4%"
+        )
+    return low, high
 
 
 def _print(account: Any, as_json: bool, text: Callable[[], str]) -> None:
@@ -310,6 +357,25 @@ def _searched(asked: argparse.Namespace, problem: Problem, path: Path) -> tuple[
     files = runs.saved(front, problem, folder)
     found = account.of_front(front, problem)
     return {**found, "run": str(path) if files else None, "files": files}, folder
+
+
+def _trips(asked: argparse.Namespace) -> int:
+    from optim import progress, text, trip_account, trip_files, trip_study, trip_text
+    from problems import load_case
+
+    case = load_case(asked.case, _overrides(asked.set))
+    folder = trip_files.opened(asked.out or _RESULTS / f"{case.name}-trips", force=asked.force)
+    with progress.counted(sys.stderr, trip_study.STEPS, "comparisons") as told:
+        study = trip_study.studied(case, asked.turbulence, asked.seed, told)
+    found = trip_account.of_trips(study)
+    files = trip_files.saved(study, found, folder)
+    found = {**found, "run": str(folder) if files else None, "files": files}
+    if not found["answered"]:
+        _print(found, asked.json, lambda: text.of_miss(found))
+        return NO
+    where = f"\n\nRun folder: {folder} ({', '.join(files)})"
+    _print(found, asked.json, lambda: trip_text.of_trips(found) + where)
+    return DONE
 
 
 if __name__ == "__main__":

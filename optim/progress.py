@@ -24,6 +24,49 @@ def shown(stream: TextIO, one_aim: bool) -> Iterator[Told]:
 
 
 @contextmanager
+def counted(stream: TextIO, total: int, what: str) -> Iterator[Callable[[], None]]:
+    """What a task of about `total` steps calls after each of them; writes to `stream`."""
+    if stream.isatty():
+        with _count_bar(stream, total, what) as told:
+            yield told
+    else:
+        yield _count_lines(stream, total, what)
+
+
+@contextmanager
+def _count_bar(stream: TextIO, total: int, what: str) -> Iterator[Callable[[], None]]:
+    from rich.console import Console
+    from rich.progress import BarColumn, TextColumn, TimeRemainingColumn
+    from rich.progress import Progress as Bar
+
+    columns = (
+        TextColumn(what),
+        BarColumn(bar_width=24),
+        TextColumn("{task.completed} of {task.total}"),
+        TimeRemainingColumn(compact=True),
+        TextColumn("left"),
+    )
+    console = Console(file=stream)
+    with Bar(*columns, console=console, transient=True, redirect_stdout=False) as bar:
+        task = bar.add_task(what, total=total)
+        yield lambda: bar.advance(task)
+
+
+def _count_lines(stream: TextIO, total: int, what: str) -> Callable[[], None]:
+    """A line for every further fifth of the steps."""
+    done = 0
+
+    def told() -> None:
+        nonlocal done
+        done += 1
+        if _LINES * done // total > _LINES * (done - 1) // total:
+            stream.write(f"{what}: {done} of {total}\n")
+            stream.flush()
+
+    return told
+
+
+@contextmanager
 def _bar(stream: TextIO, one_aim: bool) -> Iterator[Told]:
     from rich.console import Console
     from rich.progress import BarColumn, TextColumn, TimeRemainingColumn

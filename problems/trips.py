@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from typing import Literal
 
 import numpy as np
 from numpy.typing import NDArray
@@ -21,10 +22,10 @@ from problems.rules import Position, Span
 from problems.tables import STOCK, Trip
 
 ONSET_BAND = 1.5  # an honest band on the onset Re_x, either way
-_EDGE = Position(0.01, 0.03, True)  # "at the leading edge": the first per cents of the length
-_WIDE = Position(0.01, 0.9, True)
+_EDGE_SHARE = 0.03  # "at the leading edge": the first per cents of the length
 _PITCH = Position(0.03, 0.4, True)
 _TALLEST = 5e-3  # m, wire searched where the case names none
+_FITTING = {"opposite": 0.36, "alone": 0.45}  # share of the gap that one wire may take in a map
 
 
 @dataclass(frozen=True)
@@ -37,13 +38,16 @@ class Strategy:
 
 
 def strategies(case: Case) -> tuple[Strategy, ...]:
-    """The ways to compare for `case`, the plain one first; all else as the case has it."""
+    """The ways to compare for `case`, the plain one first; all else as the case has it.
+
+    Places and diameters stay within what the case allows, so a wire at the leading edge stands as
+    near to it as the case lets it.
+    """
     trip = case.trip or _any_wire(case)
     one = trip.model_copy(update={"wires": 1, "spacing": None, "sort": "wire"})
-    height = Span(0.0, trip.height.high)  # so that the search may leave the wire away
 
     def way(name: str, meaning: str, **update: object) -> Strategy:
-        changed = one.model_copy(update={"height": height, **update})
+        changed = one.model_copy(update=update)
         return Strategy(name, meaning, case.model_copy(update={"trip": changed}))
 
     pitch = trip.spacing or _PITCH
@@ -92,9 +96,10 @@ def _any_wire(case: Case) -> Trip:
 
 
 def _edge(trip: Trip) -> Position:
-    if trip.position.is_share:
-        return _EDGE
-    return Position(trip.position.low, max(2.0 * trip.position.low, trip.position.low), False)
+    """The places nearest to the leading edge that the case allows."""
+    place = trip.position
+    far = max(_EDGE_SHARE, place.low) if place.is_share else 2.0 * place.low
+    return Position(place.low, min(far, place.high), place.is_share)
 
 
 @dataclass(frozen=True)
@@ -119,16 +124,17 @@ SORTS = (
     "a wire changes the flow",
     "turbulent ahead of the wire",
     "the gap cannot keep up turbulence",
-    "the wire does not fit",
+    "a wire that trips does not fit",
 )
-_CHANGES, _TURBULENT_AHEAD, _NOT_KEPT, _NO_ROOM = range(4)
+CHANGES, TURBULENT_AHEAD, NOT_KEPT, NO_ROOM = range(4)
 
 
 def trip_map(case: Case, base: Mapping[str, float], rows: str, points: int = 220) -> TripMap:
     """The map over velocity and `rows` ("trip_share" or "gap") around the settings `base`.
 
-    Every point carries the smallest wire that trips there (U k/nu = 900), or the case's own where
-    its height is fixed. Plain surfaces are taken at the velocity that draws the same fan power.
+    Every point carries the smallest wire that trips there (U k/nu = 900), the largest that fits
+    where that one does not, or the case's own where its height is fixed. Plain surfaces are taken
+    at the velocity that draws the same fan power.
     """
     one = strategies(case)[1].case
     wired, plain = SweptPlates(one), SweptPlates(strategies(case)[0].case)
@@ -139,11 +145,12 @@ def trip_map(case: Case, base: Mapping[str, float], rows: str, points: int = 220
     share = base["trip_position"] / base["length"] or 0.05
     given |= {"gap": level} if rows == "gap" else {}
     given["trip_position"] = (level if rows == "trip_share" else share) * given["length"]
-    given["trip_height"] = _smallest(wired, case, given)
+    wanted = _smallest(wired, case, given)
+    given["trip_height"] = np.minimum(wanted, _room(one, given))
     got = wired.evaluate_settings(given)
-    sort = _sorts(wired, given, got)
+    sort = _sorts(wired, given, got, wanted)
     gain = _gain_at_equal_power(plain, given, got, points)
-    gain = np.where((sort == _NO_ROOM) | ~np.isfinite(gain), np.nan, gain)
+    gain = np.where(got.possible & np.isfinite(gain), gain, np.nan)
     shape = (points, points)
     return TripMap(
         merit(case)[0],
@@ -156,18 +163,24 @@ def trip_map(case: Case, base: Mapping[str, float], rows: str, points: int = 220
     )
 
 
-def merit(case: Case) -> tuple[str, str]:
-    """What forcing transition is for: most heat, or under a given flux the least hottest wall."""
-    if case.plates.surface.flux is None:
-        return "heat", "most"
-    return "hottest_wall", "least"
+def merit(case: Case) -> tuple[str, Literal["most", "least"]]:
+    """What forcing transition is for, as an aim.
+
+    Most heat, into the surface where that is the colder one; under a given flux the least hottest
+    wall; under one that cools the fluid most mean coefficient.
+    """
+    flux, wall = case.plates.surface.flux, case.plates.surface.temperature
+    if flux is None:
+        return "heat", "least" if (wall or 0.0) < case.fluid.temperature else "most"
+    return ("hottest_wall", "least") if flux > 0.0 else ("mean_h", "most")
 
 
 def merit_values(case: Case, outcomes: Mapping[str, Floats]) -> Floats:
-    """The merit as a positive figure to be had most of: heat, or 1 over the wall's excess."""
-    if case.plates.surface.flux is None:
-        return np.abs(outcomes["heat"])
-    return 1.0 / np.maximum(np.abs(outcomes["hottest_wall"] - case.fluid.temperature), 1e-9)
+    """The merit as a positive figure to be had most of: heat, or 1 over the wall's excess [1/K]."""
+    name, _ = merit(case)
+    if name == "hottest_wall":
+        return 1.0 / np.maximum(outcomes[name] - case.fluid.temperature, 1e-9)
+    return np.abs(outcomes[name])
 
 
 def _spread(span: Span, points: int) -> Floats:
@@ -199,14 +212,24 @@ def _smallest(problem: SweptPlates, case: Case, given: dict[str, Floats]) -> Flo
     return height
 
 
-def _sorts(problem: SweptPlates, given: dict[str, Floats], got: Evaluation) -> NDArray[np.intp]:
+def _room(case: Case, given: dict[str, Floats]) -> Floats:
+    """The tallest wire [m] that a gap takes at each design."""
+    if "gap" not in given or case.trip is None:
+        return np.full(given["length"].shape, np.inf)
+    opposite = case.trip.walls == "both" and case.trip.facing == "opposite"
+    return _FITTING["opposite" if opposite else "alone"] * given["gap"]
+
+
+def _sorts(
+    problem: SweptPlates, given: dict[str, Floats], got: Evaluation, wanted: Floats
+) -> NDArray[np.intp]:
     """Why a wire changes nothing at each design; see `SORTS`."""
     bare = problem.evaluate_settings({**given, "trip_height": 0.0 * given["length"]})
-    sort = np.full(given["length"].shape, _CHANGES)
-    sort[bare.outcomes["onset"] < 1.0001 * given["trip_position"]] = _TURBULENT_AHEAD
+    sort = np.full(given["length"].shape, CHANGES)
+    sort[(wanted > given["trip_height"]) | ~got.possible] = NO_ROOM
+    sort[bare.outcomes["onset"] < 1.0001 * given["trip_position"]] = TURBULENT_AHEAD
     if "gap" in given:
-        sort[got.outcomes["gap_reynolds"] < passage.BAND_LOW] = _NOT_KEPT
-    sort[~got.possible] = _NO_ROOM
+        sort[got.outcomes["gap_reynolds"] < passage.BAND_LOW] = NOT_KEPT
     return sort
 
 
@@ -240,6 +263,9 @@ class WireChoice:
     are the next sizes to be had from `smallest` upward; `fails_below` is the share of the velocity
     under which the wire no longer trips (0 if it never fails, 1 if it does not trip at all);
     `tolerance` the changes of merit and fan power over the mounting tolerances, as shares.
+    `merit` and `power` run over `heights`, the first of which is no wire; `turned_down` and
+    `turned_down_bare` are the merit with the wire and without over `speeds`, shares of the
+    design's velocity.
     """
 
     margin: float
@@ -251,6 +277,9 @@ class WireChoice:
     heights: Floats
     merit: Floats
     power: Floats
+    speeds: Floats
+    turned_down: Floats
+    turned_down_bare: Floats
 
 
 def wire_choice(
@@ -259,12 +288,14 @@ def wire_choice(
     margin: float = 1.1,
     place_tolerance: float = 2e-3,
     height_tolerance: float = 0.1,
+    way: Strategy | None = None,
 ) -> WireChoice:
     """What wire the design with the settings `base` wants; its place stays as it is.
 
-    `margin` is on U k/nu over 900; tolerances are on the place [m] and, as a share, the diameter.
+    `margin` is on U k/nu over 900; tolerances are on the place [m] and, as a share, the diameter;
+    `way` is the strategy of the design, one wire by default (a strip of grit is no wire).
     """
-    problem = SweptPlates(strategies(case)[1].case)
+    problem = SweptPlates((way or strategies(case)[1]).case)
     tallest = min(0.39 * base.get("gap", 1.0), 8e-3)
     heights = np.linspace(0.0, tallest, 801)
     got = problem.evaluate_settings(_around(base, heights.size) | {"trip_height": heights})
@@ -274,30 +305,44 @@ def wire_choice(
     smallest = float(heights[np.argmax(holds)]) if holds.any() else None
     best = value[0] + 0.995 * (value.max() - value[0])
     stock = case.trip.stock if case.trip is not None else STOCK
+    speeds, fails_below, wired, bare = _turndown(problem, base)
     fitting = [size for size in stock if smallest is not None and smallest <= size <= tallest]
     return WireChoice(
         margin,
         smallest,
         float(heights[np.argmax(value >= best)]),
         tuple(fitting[:3]),
-        _fails_below(problem, base),
+        fails_below,
         _tolerances(problem, base, place_tolerance, height_tolerance),
         heights,
         value,
         got.outcomes["fan_power"],
+        speeds,
+        wired,
+        bare,
     )
 
 
-def _fails_below(problem: SweptPlates, base: Mapping[str, float]) -> float:
-    """Share of the design velocity under which the wire does not set the onset."""
+def _turndown(
+    problem: SweptPlates, base: Mapping[str, float]
+) -> tuple[Floats, float, Floats, Floats]:
+    """Shares of the design velocity, the one under which the wire does not set the onset, and
+    the merit with the wire and without at each.
+    """
     share = np.linspace(0.05, 1.0, 400)
     given = _around(base, share.size) | {"velocity": share * base["velocity"]}
     got = problem.evaluate_settings(given)
+    bare = problem.evaluate_settings({**given, "trip_height": 0.0 * share})
     tripped = (got.outcomes["onset"] <= 1.25 * base["trip_position"]) & (
         got.outcomes["wire_reynolds"] >= transition.WIRE_LOW
     )
     failing = np.flatnonzero(~tripped)
-    return float(share[failing[-1]]) if failing.size else 0.0
+    return (
+        share,
+        float(share[failing[-1]]) if failing.size else 0.0,
+        merit_values(problem.case, got.outcomes),
+        merit_values(problem.case, bare.outcomes),
+    )
 
 
 def _tolerances(
