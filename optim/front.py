@@ -19,7 +19,7 @@ from optim.errors import RunError, RunExistsError
 from optim.files import written_whole
 from problems.problem import Bools, Evaluation, Floats, Problem
 
-TEXTS = ("group", "outside", "cautions")
+TEXTS = ("fan", "group", "outside", "cautions")
 TABLE, PROVENANCE, CASE = "front.csv", "run.json", "case.toml"
 
 
@@ -91,6 +91,8 @@ def tabulated(problem: Problem, designs: Floats, given: Evaluation) -> pd.DataFr
         columns.setdefault(variable.column, designs[:, place])
     for outcome in problem.outcomes:
         columns[outcome.column] = given.outcomes[outcome.name]
+    for name, texts in given.labels.items():
+        columns[name] = _texts(texts.tolist())
     columns["group"] = _texts(given.group.tolist())
     columns["outside"] = _texts(_joined(given.outside, len(given)))
     columns["cautions"] = _texts(_joined(given.cautions, len(given)))

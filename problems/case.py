@@ -79,7 +79,8 @@ def load_case(name_or_path: str | Path, overrides: Overrides | None = None) -> C
     name = str(name_or_path)
     if name in _names():
         return parse_case(ready_made_text(name), name, overrides)
-    return parse_case(_text(Path(name)), Path(name).stem, overrides, where=name)
+    path = Path(name)
+    return parse_case(_text(path), path.stem, overrides, where=name, folder=str(path.parent))
 
 
 def _text(path: Path) -> str:
@@ -111,9 +112,13 @@ def _near(path: Path) -> str:
 
 
 def parse_case(
-    text: str, name: str, overrides: Overrides | None = None, where: str | None = None
+    text: str,
+    name: str,
+    overrides: Overrides | None = None,
+    where: str | None = None,
+    folder: str = ".",
 ) -> Case:
-    """The case that `text` states; `where` is how messages call it.
+    """The case that `text` states; `where` is how messages call it, `folder` where it lies.
 
     Raises CaseError with one line for every fault.
     """
@@ -128,7 +133,7 @@ def parse_case(
     if schema is None:
         raise _error(where, _faults_of_any_kind(raw))
     try:
-        return schema.read(raw, name, text)
+        return schema.read(raw, name, text, folder)
     except ValidationError as error:
         raise _error(where, lines(error, schema, raw)) from None
 

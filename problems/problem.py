@@ -93,7 +93,8 @@ class Evaluation:
     is possible, growing smoothly above 0 elsewhere, so that a search finds its way back.
     `outside` maps a law's name to the designs that lie outside its range of validity;
     `cautions` maps one sentence for the engineer to the designs it applies to. `group` names
-    the sort of design, for telling them apart in pictures ("plain", "tripped").
+    the sort of design, for telling them apart in pictures ("plain", "tripped"); `labels` holds
+    other words about each design by column ("fan": the fan chosen for it).
     """
 
     settings: Mapping[str, Floats]
@@ -104,6 +105,7 @@ class Evaluation:
     group: NDArray[np.str_]
     outside: Mapping[str, Bools] = field(default_factory=dict)
     cautions: Mapping[str, Bools] = field(default_factory=dict)
+    labels: Mapping[str, NDArray[np.str_]] = field(default_factory=dict)
 
     def __len__(self) -> int:
         return len(self.possible)

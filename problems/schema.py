@@ -19,6 +19,7 @@ from problems.tables import (
     Fan,
     Flow,
     Fluid,
+    Money,
     Plates,
     SinglePlate,
     StackPlates,
@@ -41,17 +42,19 @@ class Case(Table):
     flow: Flow
     trip: Trip | None = None
     fan: Fan = Fan()
+    money: Money | None = None
     aims: tuple[Aim, ...]
     limits: tuple[Limit, ...] = ()
 
     _name: str = PrivateAttr("")
     _source: str = PrivateAttr("")
+    _folder: str = PrivateAttr(".")
 
     @classmethod
-    def read(cls, raw: Mapping[str, Any], name: str, source: str) -> Self:
+    def read(cls, raw: Mapping[str, Any], name: str, source: str, folder: str = ".") -> Self:
         """The case that the tables of a file give. Raises pydantic's ValidationError."""
         case = cls.model_validate(raw)
-        case._name, case._source = name, source
+        case._name, case._source, case._folder = name, source, folder
         return case
 
     @property
@@ -63,6 +66,11 @@ class Case(Table):
     def source(self) -> str:
         """The text of the case as given."""
         return self._source
+
+    @property
+    def folder(self) -> str:
+        """The folder that other files of the case are looked for in."""
+        return self._folder
 
     @property
     def spans(self) -> dict[str, Span]:

@@ -78,6 +78,15 @@ STOCK = tuple(
         *(1.25, 1.6, 2.0, 2.5, 3.15, 4.0, 5.0, 6.3),
     )
 )
+_DROP = Number("a pressure drop", '"60 Pa"', "Pa", 0.0, 1e5, open_low=True)
+_FLOW = Number("a volume flow", '"3000 m3/h"', "m3/s", 0.0, 1e4, open_low=True)
+_CLOGGED = Number("a rise", '"100 %"', "1", 0.0, 10.0)
+_MARGIN = Number("a share of the flow", '"10 %"', "1", 0.0, 0.9)
+_PRICE = Number("a price per kWh", "0.25", "1", 0.0, 1e6)
+_HOURS = Number("hours in a year", "4000", "1", 0.0, 8784.0, open_low=True)
+_AREA_PRICE = Number("a price per m2", "30", "1", 0.0, 1e9)
+_LIFE = Number("years", "15", "1", 0.0, 200.0, open_low=True)
+_INTEREST = Number("interest a year", '"4 %"', "1", 0.0, 1.0)
 _EFFICIENCY = Number("an efficiency", "0.55", "1", 0.0, 1.0, open_low=True)
 
 
@@ -275,7 +284,43 @@ class Trip(Table):
         return self.position.is_share
 
 
+class Resistance(Table):
+    """A resistance in series with the plates: a pressure drop [Pa] at a volume flow [m3/s]."""
+
+    pressure_drop: Annotated[float, _DROP]
+    flow: Annotated[float, _FLOW]
+
+
+class Filter(Resistance):
+    """A filter, laminar: its drop goes with the flow. `clogged` is the share it rises by."""
+
+    clogged: Annotated[float, _CLOGGED, Assumed("changed at twice its clean drop")] = 1.0
+
+
 class Fan(Table):
-    """What drives the flow; efficiency of fan or pump, drive and motor together."""
+    """What drives the flow.
+
+    Without a catalogue `efficiency` is that of fan or pump, drive and motor together. With one
+    the fan is chosen from it, `parallel` at most of one sort, holding `margin` to its peak.
+    """
 
     efficiency: Annotated[float, _EFFICIENCY, Assumed("fan, drive and motor together")] = 0.55
+    catalogue: Annotated[str | None, Text("a ready-made catalogue, a CSV file or a folder")] = None
+    drive: Annotated[
+        Literal["variable speed", "fixed speed"], Choice(("variable speed", "fixed speed"))
+    ] = "variable speed"
+    margin: Annotated[float, _MARGIN] = 0.10
+    parallel: Annotated[Literal[1, 2, 3, 4, 6, 8], Choice((1, 2, 3, 4, 6, 8))] = 1
+    external: Resistance | None = None
+    filter: Filter | None = None
+
+
+class Money(Table):
+    """What things cost, in one currency: per kWh, per m2 of swept plate area; years, a year."""
+
+    electricity: Annotated[float, _PRICE]
+    hours: Annotated[float, _HOURS]
+    plate_price: Annotated[float, _AREA_PRICE] = 0.0
+    life: Annotated[float, _LIFE, Assumed("years")] = 15.0
+    interest: Annotated[float, _INTEREST, Assumed("a year, real")] = 0.04
+    currency: Annotated[str, Text("a currency")] = "money"

@@ -36,6 +36,10 @@ _SUFFIX = {
     "Pa": "_Pa",
     "K": "_K",
     "delta K": "_K",
+    "turn/s": "_per_s",
+    "W/(m3/s)": "_W_per_m3_s",
+    "kWh": "_kWh",
+    "money": "",
 }
 
 # SI unit -> how it is shown: from this size on, the label, and shown = SI * factor + offset
@@ -57,6 +61,10 @@ _SHOWN: dict[str, tuple[tuple[float, str, float, float], ...]] = {
     "Pa": ((0.0, "Pa", 1.0, 0.0), (1e4, "kPa", 1e-3, 0.0)),
     "K": ((0.0, "°C", 1.0, -273.15),),
     "delta K": ((0.0, "K", 1.0, 0.0),),
+    "turn/s": ((0.0, "rpm", 60.0, 0.0),),
+    "W/(m3/s)": ((0.0, "W/(m³/s)", 1.0, 0.0),),
+    "kWh": ((0.0, "kWh", 1.0, 0.0), (1e4, "MWh", 1e-3, 0.0)),
+    "money": ((0.0, "", 1.0, 0.0),),
 }
 
 _QUANTITY = re.compile(r"([+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d{1,3})?)\s*(.*)", re.DOTALL)
@@ -100,7 +108,7 @@ def _line(written: str, unit: str) -> tuple[float, float]:
     """Factor and offset that take a number in the unit `written` to the SI unit `unit`."""
     import pint
 
-    base = _registry().parse_units("") if unit in ("", "1") else _pint_unit(unit)
+    base = _registry().parse_units("") if unit in ("", "1", "money") else _pint_unit(unit)
     try:
         given = _pint_unit(written)
         offset, one = (_registry().Quantity(x, given).to(base).magnitude for x in (0.0, 1.0))

@@ -73,7 +73,7 @@ def developed_nusselt(re_d: Floats, pr: Floats, relative_roughness: Floats) -> F
     if not np.any(relative_roughness > 0.0):
         return smooth
     ratio = np.minimum(roughness_ratio(re, relative_roughness), 4.0)
-    return smooth * ratio ** np.minimum(0.68 * pr**0.215, 1.0)
+    return np.asarray(smooth * ratio ** np.minimum(0.68 * pr**0.215, 1.0))
 
 
 def local_entrance(diameters: Floats) -> Floats:

@@ -36,6 +36,8 @@ _STACK = (
     Outcome("outlet_temperature", "K", "mixed temperature of the fluid leaving the plates"),
     Outcome("mass_flow", "kg/s", "mass flow through the stack"),
     Outcome("flow_rate", "m3/s", "volume flow through the stack, at inlet density"),
+    Outcome("system_pressure", "Pa", "pressure the fan makes up: stack, external, filter"),
+    Outcome("specific_fan_power", "W/(m3/s)", "power that the fan draws over volume flow"),
     Outcome("pressure_drop", "Pa", "static pressure drop, from before the stack to behind it"),
     Outcome("entrance_drop", "Pa", "part of the pressure drop: contraction and entrance"),
     Outcome("shear_drop", "Pa", "part of the pressure drop: wall shear"),
@@ -49,7 +51,24 @@ _STACK = (
     ),
 )
 
-OUTCOMES = {"plate": _SHARED, "stack": _SHARED + _STACK}
+
+# only where the case names a catalogue of fans, or what things cost
+_FANS = (
+    Outcome("fan_speed", "turn/s", "speed of the chosen fan"),
+    Outcome("fan_count", "1", "number of chosen fans in parallel"),
+    Outcome("fan_margin", "1", "share of the flow right of the peak of the fan's curve"),
+    Outcome("fan_best_share", "1", "flow over that at the fan's best efficiency"),
+)
+_MONEY = (
+    Outcome("yearly_energy", "kWh", "electricity of the fan in a year"),
+    Outcome("yearly_cost", "money", "electricity and the annuity of plates and fans, in a year"),
+    Outcome("present_value", "money", "plates and fans, and the electricity of the life today"),
+)
+OUTCOMES = {"plate": _SHARED + _MONEY, "stack": _SHARED + _STACK + _FANS + _MONEY}
+OPTIONAL = {
+    **{outcome.name: "fan.catalogue" for outcome in _FANS},
+    **{outcome.name: "money" for outcome in _MONEY},
+}
 
 _PLATE_SETTINGS = (
     Outcome("length", "m", "plate length along the flow"),

@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from problems.case import Case
 from problems.convection import passage
 from problems.convection.fluids import Fluid
+from problems.kinds.blown import Blower
 from problems.kinds.plate import walls_under_flux
 from problems.kinds.swept import Settings, Walked, walk
 
@@ -28,7 +29,9 @@ def complete(case: Case, given: dict[str, Floats]) -> dict[str, Floats]:
     return {**given, "height": height, "count": height / pitch}
 
 
-def balance(case: Case, fluid: Fluid, given: Settings) -> tuple[Walked, dict[str, Floats]]:
+def balance(
+    case: Case, fluid: Fluid, given: Settings, blower: Blower
+) -> tuple[Walked, dict[str, Floats]]:
     """Walk along the gaps and balance heat, force, pressure and power; outcomes by name."""
     inlet, wall = case.fluid.temperature, case.plates.surface.temperature
     flux = case.plates.surface.flux or 0.0
@@ -61,9 +64,8 @@ def balance(case: Case, fluid: Fluid, given: Settings) -> tuple[Walked, dict[str
         "heat": mass_flow * walked.properties.cp * (outlet - inlet),
         "drag": (walked.sweep.friction + walked.sweep.wire_friction) * dynamic * area,
         "wire_drag": walked.sweep.wire_friction * dynamic * area,
-        "fan_power": _spent(case, fluid, given, walked, outlet, pressure_drop)
-        * flow_rate
-        / case.fan.efficiency,
+        "system_pressure": _spent(case, fluid, given, walked, outlet, pressure_drop)
+        + blower.outside()(flow_rate),
         "hottest_wall": hottest,
         "coldest_wall": coldest,
         "plate_area": area,

@@ -17,10 +17,12 @@ from problems.case import Case
 from problems.convection import fluids
 from problems.convection.flat_plate import smooth_step
 from problems.convection.fluids import Fluid, FluidError
+from problems.fans.choice import Choice
 from problems.kinds import cautions, laws, pictures, plate, stack, words
-from problems.kinds.outcomes import OUTCOMES, SETTINGS
+from problems.kinds.blown import Blower, reasons_of
+from problems.kinds.outcomes import OPTIONAL, OUTCOMES, SETTINGS
 from problems.kinds.swept import CHUNK, Settings, Walked, settings, variables
-from problems.problem import Evaluation, Floats, Problem, Profile, Sketch
+from problems.problem import Evaluation, Floats, Outcome, Problem, Profile, Sketch
 
 _Scalar = TypeVar("_Scalar", bound=np.generic)
 
@@ -35,6 +37,8 @@ class Batch:
     settings: dict[str, Floats]
     walked: Walked
     outcomes: dict[str, Floats]
+    choice: Choice | None = None
+    met: NDArray[np.bool_] | None = None
 
 
 def build(case: Case) -> SweptPlates:
@@ -58,7 +62,7 @@ class SweptPlates(Problem):
         self.title, self.kind, self.source = case.title, case.kind, case.source
         self.variables = variables(case)
         self.settings = SETTINGS[case.kind]
-        self.outcomes = OUTCOMES[case.kind]
+        self.outcomes = _given(case)
         self.aims, self.limits = case.aims, case.limits
         self._ranges = laws.in_use(
             passage=case.kind == "stack",
@@ -68,6 +72,11 @@ class SweptPlates(Problem):
         )
         self.laws = tuple(law for law, _ in self._ranges)
         self.fluid = _fluid(case)
+        self.blower = Blower(case)
+        if self.blower.catalogue is not None and self.fluid.phase == "liquid":
+            raise CaseError(
+                f"{case.name}: fan.catalogue -- fans move gases; take efficiency of a pump"
+            )
         self.notes = words.notes(case, self.fluid)
 
     def evaluate(self, designs: Floats) -> Evaluation:
@@ -91,6 +100,8 @@ class SweptPlates(Problem):
 
     def _evaluate(self, batch: Batch) -> Evaluation:
         impossible_by, reasons = _impossible(self.fluid, batch)
+        if batch.choice is not None:
+            impossible_by, reasons = _unserved(batch, batch.choice, impossible_by, reasons)
         walk = laws.Walk(batch.walked.surface, batch.walked.sweep)
         return Evaluation(
             settings=batch.settings,
@@ -103,6 +114,7 @@ class SweptPlates(Problem):
             cautions=cautions.found(
                 self.case, self.fluid, batch.settings, batch.walked, batch.outcomes
             ),
+            labels=self.blower.names(batch.choice),
         )
 
     def batch(self, designs: Floats) -> Batch:
@@ -110,15 +122,40 @@ class SweptPlates(Problem):
         return self._balanced(settings(self.case, designs))
 
     def _balanced(self, given: Settings) -> Batch:
-        given = dict(given)
         if self.kind == "stack":
-            given = stack.complete(self.case, given)
-        balance = stack.balance if self.kind == "stack" else plate.balance
-        walked, outcomes = balance(self.case, self.fluid, given)
-        outcomes |= _common(self.case, given, walked, outcomes)
+            return self._blown(stack.complete(self.case, dict(given)))
+        walked, outcomes = plate.balance(self.case, self.fluid, given)
+        return self._batch(given, walked, outcomes | self.blower.priced(outcomes, None))
+
+    def _blown(self, given: Settings) -> Batch:
+        """A stack with what drives it; at fixed speed the fan decides the velocity."""
+        choice, met = None, None
+        if self.blower.fixed:
+            velocity, choice, met = self.blower.met(
+                given, lambda some: stack.balance(self.case, self.fluid, some, self.blower)[1]
+            )
+            # where no fan serves, the least velocity wanted stands, so that all stays smooth
+            velocity = np.where(choice.duty.holds, velocity, given["velocity"])
+            given = {**given, "velocity": velocity}
+        walked, outcomes = stack.balance(self.case, self.fluid, given, self.blower)
+        if choice is None:
+            choice = self.blower.chosen(outcomes)
+        outcomes |= self.blower.powered(outcomes, choice)
+        outcomes |= self.blower.priced(outcomes, choice)
+        return self._batch(given, walked, outcomes, choice, met)
+
+    def _batch(
+        self,
+        given: Settings,
+        walked: Walked,
+        outcomes: dict[str, Floats],
+        choice: Choice | None = None,
+        met: NDArray[np.bool_] | None = None,
+    ) -> Batch:
+        outcomes = outcomes | _common(self.case, given, walked, outcomes)
         ordered = {outcome.name: outcomes[outcome.name] for outcome in self.outcomes}
         shown = {setting.name: given[setting.name] for setting in self.settings}
-        return Batch(shown, walked, ordered)
+        return Batch(shown, walked, ordered, choice, met)
 
     def profile(self, design: Floats) -> Profile:
         """Curves along the plate of one design; see `Problem.profile`."""
@@ -149,8 +186,34 @@ class SweptPlates(Problem):
         return SweptPlates(self.case.model_copy(update={"plates": plates})), design
 
 
+def _given(case: Case) -> tuple[Outcome, ...]:
+    """The outcomes that a case has: those of fans and of money only where it names them.
+
+    Raises CaseError where an aim or a limit names one that it has not.
+    """
+    tables = {"fan.catalogue": case.fan.catalogue is not None, "money": case.money is not None}
+    named = {aim.outcome for aim in case.aims} | {limit.outcome for limit in case.limits}
+    for name in sorted(named):
+        if not tables.get(OPTIONAL.get(name, ""), True):
+            raise CaseError(f"{case.name}: 1 fault\n  {name} -- needs {OPTIONAL[name]} in the case")
+    return tuple(o for o in OUTCOMES[case.kind] if tables.get(OPTIONAL.get(o.name, ""), True))
+
+
+def _unserved(
+    batch: Batch, choice: Choice, impossible_by: Floats, reasons: NDArray[np.str_]
+) -> tuple[Floats, NDArray[np.str_]]:
+    """Designs that no fan can serve are impossible too, with the reason of the nearest fan."""
+    short = np.where(choice.duty.holds, 0.0, np.maximum(choice.duty.short_by, 1e-6))
+    texts = np.where(choice.duty.holds, "", reasons_of(choice))
+    if batch.met is not None:
+        off = choice.duty.holds & ~batch.met
+        short = np.where(off, 0.1, short)
+        texts = np.where(off, "the fan drives a velocity outside the range of the case", texts)
+    return impossible_by + short, np.where(reasons == "", texts, reasons)
+
+
 def _common(
-    case: Case, given: dict[str, Floats], walked: Walked, outcomes: dict[str, Floats]
+    case: Case, given: Settings, walked: Walked, outcomes: dict[str, Floats]
 ) -> dict[str, Floats]:
     """The outcomes that follow in the same way for every kind."""
     sweep = walked.sweep
@@ -263,6 +326,7 @@ def joined(parts: list[Evaluation]) -> Evaluation:
         group=_end_to_end([p.group for p in parts]),
         outside={key: _end_to_end([p.outside[key] for p in parts]) for key in first.outside},
         cautions={key: _end_to_end([p.cautions[key] for p in parts]) for key in first.cautions},
+        labels={key: _end_to_end([p.labels[key] for p in parts]) for key in first.labels},
     )
 
 
