@@ -31,7 +31,7 @@ _LOOKS: tuple[tuple[Any, str, str], ...] = (
     ((0, (1.5, 1.5)), "D", ink.PALETTE[3]),
     ((0, (8, 2, 1, 2, 1, 2)), "X", ink.PALETTE[4]),
 )
-_LEGEND_MM = 40.0
+_LEGEND_MM = 46.0
 
 
 def save_pictures(study: TripStudy, folder: Path) -> list[Path]:
@@ -97,7 +97,7 @@ def gain_picture(study: TripStudy) -> Figure:
             exact = [100.0 * study.gain(place, name) for place in places]
             ax.plot(at, exact, ls="", marker=marker, ms=5.0, mfc=colour, mec=ink.INK, mew=0.5)
             ax.plot([], [], ls=dash, marker=marker, ms=5.0, color=colour, mec=ink.INK, label=name)
-        _band(ax, study, at)
+        _band(ax, study, x_of(powers), gains, at)
         highest = max(100.0 * max(float(g.max()) for g in gains.values()), 4.0)
         lowest = min(0.0, 100.0 * min(study.guaranteed(p, study.best) for p in places))
         ax.set_ylim(lowest - 0.06 * highest, 1.08 * highest)
@@ -173,29 +173,37 @@ def _answers(ax: Axes, study: TripStudy, merit: str, x_of: Any, y_of: Any) -> No
     for name in dict.fromkeys((study.best, "plain")):
         won = study.winners[study.shown, AT_POWER, name]
         x, y = x_of(np.array([won[POWER]])), y_of(np.array([won[merit]]))
-        told = "compared in the answer" if name == "plain" else None
+        told = "compared in\nthe answer" if name == "plain" else None
         ax.plot(x, y, ls="", marker="o", ms=11.0, mfc="none", mec=ink.INK, mew=1.1, label=told)
 
 
 def _zero(ax: Axes) -> None:
     ax.axhline(0.0, color=ink.INK, lw=1.0)
     ax.axhline(
-        100.0 * PAYS, color=ink.GREY, lw=0.8, ls=(0, (2, 2)), label=f"counts as paying ({PAYS:.0%})"
+        100.0 * PAYS,
+        color=ink.GREY,
+        lw=0.8,
+        ls=(0, (2, 2)),
+        label=f"counts as\npaying, {100 * PAYS:.0f} %",
     )
 
 
-def _band(ax: Axes, study: TripStudy, at: Floats) -> None:
-    """The gain of the best way over the band of onsets, shaded."""
+def _band(ax: Axes, study: TripStudy, x: Floats, gains: dict[str, Floats], at: Floats) -> None:
+    """The gain of the best way over the band of onsets, shaded; between references as far from
+    the line as at them.
+    """
     if study.best == "plain":
         return
-    bands = [study.bands[place, study.best].gain for place in range(len(at))]
-    low = [100.0 * study.guaranteed(place, study.best) for place in range(len(at))]
+    name, line = study.best, 100.0 * gains[study.best]
+    ends = [(study.guaranteed(p, name), study.bands[p, name].gain.max()) for p in range(len(at))]
+    apart = 100.0 * np.array([np.array(end) - study.gain(p, name) for p, end in enumerate(ends)])
+    low, high = (line + np.interp(np.log(x), np.log(at), side) for side in apart.T)
     high = [
         100.0 * max(float(band.max()), study.gain(p, study.best)) for p, band in enumerate(bands)
     ]
     colour = _look(study, study.best)[2]
     ax.fill_between(
-        at, low, high, color=colour, alpha=0.25, lw=0.0, label=f"{study.best},\nover the onset band"
+        at, low, high, color=colour, alpha=0.25, lw=0.0, label=f"{name} over\nthe onset band"
     )
 
 
@@ -209,17 +217,14 @@ def _diameter(ax: Axes, study: TripStudy, height: float) -> None:
     x = 1e3 * wire.heights[shown]
     merit = 100.0 * (wire.merit[shown] / wire.merit[0] - 1.0)
     power = 100.0 * (wire.power[shown] / wire.power[0] - 1.0)
-    told = {"hottest_wall": "cooling of the hottest place"}.get(
-        study.merit.outcome, words(study.merit.outcome)
-    )
-    ax.plot(x, merit, color=ink.PALETTE[0], label=told)
+    ax.plot(x, merit, color=ink.PALETTE[0], label=_merit_told(study))
     ax.plot(x, power, color=ink.PALETTE[1], ls=(0, (5, 2)), label=words(POWER))
     ax.set_xlabel("wire diameter, mm")
     ax.set_ylabel("change by the wire, %")
     ax.set_xlim(0.0, float(x[-1]))
     marks = [("-", height, "design"), ((0, (1, 1.5)), wire.enough, "enough: more only drags")]
     if wire.smallest is not None:
-        margin = f"trips with {wire.margin - 1.0:.0%} to spare"
+        margin = f"trips, {100.0 * (wire.margin - 1.0):.0f} % to spare"
         marks.append(((0, (6, 2)), wire.smallest, margin))
     for dash, size, name in marks:
         ax.axvline(1e3 * size, color=ink.GREY, ls=dash, lw=1.1, label=name)
@@ -229,7 +234,12 @@ def _diameter(ax: Axes, study: TripStudy, height: float) -> None:
             1e3 * np.array(wire.stock), foot, ls="", marker="^", ms=7.0, mfc="white", mec=ink.INK,
             transform=ax.get_xaxis_transform(), clip_on=False, label="in stock", zorder=5,
         )  # fmt: skip
-    _above(ax)
+    _above(ax, 2)
+
+
+def _merit_told(study: TripStudy) -> str:
+    told = {"hottest_wall": "1 / wall excess"}
+    return told.get(study.merit.outcome, words(study.merit.outcome))
 
 
 def _turndown(ax: Axes, study: TripStudy) -> None:
@@ -239,7 +249,8 @@ def _turndown(ax: Axes, study: TripStudy) -> None:
         return
     x = 100.0 * wire.speeds
     gain = 100.0 * (wire.turned_down / wire.turned_down_bare - 1.0)
-    ax.plot(x, gain, color=ink.PALETTE[0], label="with the wire, over the same plate without")
+    told = _merit_told(study)
+    ax.plot(x, gain, color=ink.PALETTE[0], label=f"{told}, over no wire")
     ax.axhline(0.0, color=ink.INK, lw=1.0)
     if wire.fails_below > 0.0:
         share = 100.0 * wire.fails_below
@@ -250,9 +261,9 @@ def _turndown(ax: Axes, study: TripStudy) -> None:
     _above(ax)
 
 
-def _above(ax: Axes) -> None:
+def _above(ax: Axes, columns: int) -> None:
     """The legend of a panel above it, as wide as the panel."""
     ax.legend(
-        loc="lower left", bbox_to_anchor=(-0.12, 1.02), ncols=2, borderaxespad=0.0,
+        loc="lower left", bbox_to_anchor=(-0.12, 1.02), ncols=columns, borderaxespad=0.0,
         columnspacing=1.0, handlelength=2.2, handletextpad=0.5,
     )  # fmt: skip

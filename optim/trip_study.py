@@ -11,10 +11,10 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
+import pandas as pd
 
 from optim.contest import Criterion, Design, Entry, Told, Winners, fronts, hold, spread_along
 from optim.front import Front
-from optim.picks import column
 from problems.problem import Aim, Floats
 
 if TYPE_CHECKING:
@@ -307,19 +307,26 @@ def _curve(
     """Fan powers along the plain front and the gain of every other way at each of them."""
     if not len(known["plain"]):
         return np.empty(0), {}
-    base = _envelope(case, merit, entries[0], known["plain"], winners)
+    bare = [_bare(entry, known[entry.name]) for entry in entries]
+    base = _envelope(case, merit, entries[0], pd.concat(bare), winners)
     powers = np.geomspace(base[0][0], base[0][-1], _CURVE) if base[0][0] > 0.0 else base[0]
     plain = _at(powers, base)
     gains = {}
     for entry in entries[1:]:
-        other = _envelope(case, merit, entry, known[entry.name], winners)
+        other = _envelope(case, merit, entry, known[entry.name].table, winners)
         reached = _at(powers, other) if len(other[0]) else plain
         gains[entry.name] = np.maximum(reached / plain - 1.0, 0.0)
     return powers, gains
 
 
+def _bare(entry: Entry, front: Front) -> pd.DataFrame:
+    """The designs of a front without a wire: plain ones, whichever search found them."""
+    height = entry.problem.outcome("trip_height").column
+    return front.table[front.table[height] == 0.0]
+
+
 def _envelope(
-    case: Case, merit: Aim, entry: Entry, front: Front, winners: Winners
+    case: Case, merit: Aim, entry: Entry, table: pd.DataFrame, winners: Winners
 ) -> tuple[Floats, Floats]:
     """Fan powers of a way's best designs and the most merit up to each of them, rising."""
     from problems.trips import merit_values
@@ -331,9 +338,10 @@ def _envelope(
     ]
     powers = np.array([won[POWER] for won in named])
     worth = np.array([_worth(case, merit, won) for won in named])
-    if len(front):
-        figures = column(front, entry.problem, merit.outcome)
-        powers = np.concatenate([powers, column(front, entry.problem, POWER)])
+    if len(table):
+        named_of = entry.problem.outcome
+        figures = table[named_of(merit.outcome).column].to_numpy(dtype=float)
+        powers = np.concatenate([powers, table[named_of(POWER).column].to_numpy(dtype=float)])
         worth = np.concatenate([worth, merit_values(case, {merit.outcome: figures})])
     order = np.argsort(powers, kind="stable")
     return powers[order], np.maximum.accumulate(worth[order])
