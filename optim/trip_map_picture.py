@@ -11,9 +11,9 @@ import numpy as np
 
 from optim import ink
 from optim.text import words
-from optim.trip_study import AT_POWER, TripStudy
+from optim.trip_study import AT_POWER, POWER, TripStudy
 from problems.problem import Bools, Floats
-from problems.units import axis_unit, format_number
+from problems.units import axis_unit, format_number, format_value
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -21,8 +21,9 @@ if TYPE_CHECKING:
 
     from problems.trips import TripMap
 
-_MAP_MM, _BETWEEN_MM, _KEY_MM = 82.0, 34.0, 40.0
+_MAP_MM, _BETWEEN_MM, _KEY_MM = 82.0, 28.0, 48.0
 _LEVELS = (1, 2, 5, 10, 20, 40, 60, 80, 100, 150, 200)  # %, either way
+_MOST_LEVELS = 5  # either side of zero
 _HATCHES = ("", "\\\\\\\\", "////", "xxxx")
 _COLOURS = "PuOr"  # orange for a loss, violet for a gain
 _LEAST_SHARE = 0.01  # of the map: a smaller region is not labelled
@@ -35,7 +36,7 @@ def map_picture(study: TripStudy) -> Figure:
     with ink.style():
         below = (
             "Gain over the plain surface at equal fan power; at every point the smallest wire that "
-            "trips there (U k/nu = 900), or the largest that fits."
+            "trips there (U\u00a0k/nu\u00a0=\u00a0900), or the largest that fits."
         )
         top = ink.head_mm(title, below) + 9.0
         count = len(study.maps)
@@ -51,25 +52,34 @@ def map_picture(study: TripStudy) -> Figure:
 
 
 def _levels(study: TripStudy) -> Floats:
-    """Contours in % either side of zero, as far as gains of the maps go and as losses are told."""
+    """Contours in % either side of zero, as far as gains and losses of the maps go."""
     gains = np.concatenate([chart.gain.ravel() for chart in study.maps])
-    known = gains[np.isfinite(gains)]
-    most = max(100.0 * float(known.max(initial=0.0)), 5.0)
-    steps = [step for step in _LEVELS if most / 16.0 <= step <= most]
-    return np.array([*(-step for step in reversed(steps)), 0.0, *steps], dtype=float)
+    known = 100.0 * gains[np.isfinite(gains)]
+    losses, wins = (
+        [step for step in _LEVELS if step <= max(end, 2.0)][-_MOST_LEVELS:]
+        for end in (float(-known.min(initial=0.0)), float(known.max(initial=0.0)))
+    )
+    return np.array([*(-step for step in reversed(losses)), 0.0, *wins], dtype=float)
+
+
+def _colours(levels: Floats) -> list[Any]:
+    """A colour for each stretch between contours: losses one hue, gains the other."""
+    from matplotlib import colormaps
+
+    ramp = colormaps[_COLOURS]
+    losses, wins = int((levels < 0.0).sum()) + 1, int((levels > 0.0).sum()) + 1
+    return [*ramp(np.linspace(0.08, 0.46, losses)), *ramp(np.linspace(0.54, 0.9, wins))]
 
 
 def _draw(figure: Figure, ax: Axes, study: TripStudy, chart: TripMap, levels: Floats) -> None:
-    from matplotlib import colormaps
-    from matplotlib.colors import BoundaryNorm
+    from matplotlib.patheffects import withStroke
 
     x, y = chart.columns[1], _shown(chart)
     gain = np.ma.masked_invalid(100.0 * chart.gain)
-    ramp = colormaps[_COLOURS]
-    norm = BoundaryNorm(levels, ramp.N, extend="both")
-    filled = ax.contourf(x, y, gain, levels=levels, cmap=ramp, norm=norm, extend="both")
+    filled = ax.contourf(x, y, gain, levels=levels, colors=_colours(levels), extend="both")
     thin = ax.contour(x, y, gain, levels=levels[levels != 0.0], colors=ink.GREY, linewidths=0.6)
-    ax.clabel(thin, fmt=lambda value: f"{value:+.0f} %", fontsize=7.5)
+    for label in ax.clabel(thin, fmt=lambda value: f"{value:+.0f} %", fontsize=7.5, colors=ink.INK):
+        label.set_path_effects([withStroke(linewidth=2.0, foreground="white")])
     if gain.min() < 0.0 < gain.max():
         ax.contour(x, y, gain, levels=[0.0], colors=ink.INK, linewidths=2.2)
     ax.set_xscale("log")
@@ -155,17 +165,40 @@ def _designs(ax: Axes, study: TripStudy, chart: TripMap) -> list[tuple[Any, str]
         if at is None or (wired and design.settings["trip_height"] == 0.0):
             continue
         found.append(place)
-        ax.plot(*at, ls="", marker="o", ms=5.5, mfc="white", mec=ink.INK, mew=1.0, zorder=7)
+        ax.plot(
+            *at,
+            ls="",
+            marker="o",
+            ms=5.5,
+            mfc="white",
+            mec=ink.INK,
+            mew=1.0,
+            zorder=7,
+            clip_on=False,
+        )
         if place == study.shown:
-            ax.plot(*at, ls="", marker="o", ms=10.5, mfc="none", mec=ink.INK, mew=1.1, zorder=7)
+            ax.plot(
+                *at,
+                ls="",
+                marker="o",
+                ms=10.5,
+                mfc="none",
+                mec=ink.INK,
+                mew=1.1,
+                zorder=7,
+                clip_on=False,
+            )
         _number(ax, str(place + 1), *at)
     if not found:
         return []
-    sort = f"{name}: the best at\nthe fan powers 1 to {len(study.references)}"
+    powers = [format_value(float(f"{one[POWER]:.2g}"), "W") for one in study.references]
+    told = ", ".join(f"{place + 1}: {powers[place]}" for place in found)
+    sort = f"{name}, best at {told}".replace(": ", ":\N{NO-BREAK SPACE}")
+    sort = sort.replace(" W", "\N{NO-BREAK SPACE}W")
     entries = [(Line2D([], [], ls="", marker="o", ms=5.5, mfc="white", mec=ink.INK), sort)]
     if study.shown in found:
         ring = Line2D([], [], ls="", marker="o", ms=10.5, mfc="none", mec=ink.INK)
-        entries.append((ring, "the one of the answer,\nwhose sizes the map has"))
+        entries.append((ring, "of the answer; the map has its other sizes"))
     return entries
 
 
@@ -204,13 +237,21 @@ def _second_axis(ax: Axes, study: TripStudy, chart: TripMap) -> None:
     won = study.winners[study.shown, AT_POWER, study.wire_way or "plain"]
     on_gap = chart.rows[0] == "trip_share" and "gap_reynolds" in won.outcomes
     name = "gap_reynolds" if on_gap else "length_reynolds"
-    each = won.outcomes[name] / won.settings["velocity"]
+    each = float(won.outcomes[name] / won.settings["velocity"])
     size = won.settings["gap" if on_gap else "length"]
     unit, convert = axis_unit("m", np.array([size]))
-    told = f"{words('gap' if on_gap else 'length')} {format_number(float(convert(size)))} {unit}"
-    top = ax.secondary_xaxis("top", functions=(lambda v: v * each, lambda re: re / each))
+    shown = format_number(float(f"{float(convert(size)):.3g}"))
+    told = f"{words('gap' if on_gap else 'length')} {shown} {unit}"
+
+    def forth(velocity: Any) -> Any:
+        return velocity * each
+
+    def back(reynolds: Any) -> Any:
+        return reynolds / each
+
+    top = ax.secondary_xaxis("top", functions=(forth, back))
     what = "gap, 2 s u/nu" if on_gap else "plate, u L/nu"
-    top.set_xlabel(f"Reynolds number of the {what} ({told})")
+    top.set_xlabel(f"Reynolds number of the {what} ({told})", labelpad=5.0)
     _ticks(top.xaxis, chart.columns[1] * each)
 
 
@@ -221,18 +262,25 @@ def _key(figure: Figure, ax: Axes, filled: Any, entries: list[tuple[Any, str]]) 
     bar = ink.panel(
         figure,
         box.x0 * ink.WIDTH_MM + wide + 5.0,
-        box.y0 * ink.height_mm(figure) + 0.42 * _MAP_MM,
+        box.y0 * ink.height_mm(figure) + 0.46 * _MAP_MM,
         4.0,
-        0.5 * _MAP_MM,
+        0.45 * _MAP_MM,
     )
-    figure.colorbar(filled, cax=bar, format=lambda value, _: f"{value:+.0f} %".replace("+0 ", "0 "))
+    figure.colorbar(
+        filled,
+        cax=bar,
+        spacing="uniform",
+        ticks=filled.levels,
+        format=lambda value, _: f"{value:+.0f} %".replace("+0 ", "0 "),
+    )
+    bar.minorticks_off()
     bar.set_title("gain", fontsize=8.5, loc="left")
     if entries:
         handles, labels = zip(*entries, strict=True)
-        ink.legend(ax, handles, [_folded(label) for label in labels], 0.34)
+        ink.legend(ax, handles, [_folded(label) for label in labels], 0.38)
 
 
 def _folded(label: str) -> str:
     import textwrap
 
-    return "\n".join(line for part in label.split("\n") for line in textwrap.wrap(part, 25))
+    return "\n".join(line for part in label.split("\n") for line in textwrap.wrap(part, 24))

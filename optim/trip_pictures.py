@@ -198,12 +198,9 @@ def _band(ax: Axes, study: TripStudy, x: Floats, gains: dict[str, Floats], at: F
     ends = [(study.guaranteed(p, name), study.bands[p, name].gain.max()) for p in range(len(at))]
     apart = 100.0 * np.array([np.array(end) - study.gain(p, name) for p, end in enumerate(ends)])
     low, high = (line + np.interp(np.log(x), np.log(at), side) for side in apart.T)
-    high = [
-        100.0 * max(float(band.max()), study.gain(p, study.best)) for p, band in enumerate(bands)
-    ]
     colour = _look(study, study.best)[2]
     ax.fill_between(
-        at, low, high, color=colour, alpha=0.25, lw=0.0, label=f"{name} over\nthe onset band"
+        x, low, high, color=colour, alpha=0.25, lw=0.0, label=f"{name} over\nthe onset band"
     )
 
 
@@ -258,7 +255,7 @@ def _turndown(ax: Axes, study: TripStudy) -> None:
     ax.set_xlabel("velocity, % of the design's")
     ax.set_ylabel("change at the same velocity, %")
     ax.set_xlim(float(x[0]), 100.0)
-    _above(ax)
+    _above(ax, 1)
 
 
 def _above(ax: Axes, columns: int) -> None:
