@@ -161,21 +161,23 @@ def draw(frame: pd.DataFrame, path: str) -> None:
     words = {"heat": "mean Stanton number", "friction": "mean wall shear", "drop": "pressure drop"}
     for ax, (name, title) in zip(figure.subplots(3, 1, sharex=True), words.items(), strict=True):
         size = 100.0 * gaps[name]
-        dots = ax.scatter(
-            gaps["re_d"],
-            gaps["re_l"] / gaps["re_d"],
-            c=np.clip(size, -15.0, 15.0),
-            s=8.0 + 3.0 * np.minimum(size.abs(), 20.0),
-            cmap="PuOr",
-            vmin=-15.0,
-            vmax=15.0,
-            edgecolors="0.3",
-            linewidths=0.3,
-        )
+        for marker, part in (("^", gaps[size >= 0.0]), ("v", gaps[size < 0.0])):
+            dots = ax.scatter(
+                part["re_d"],
+                part["re_l"] / part["re_d"],
+                c=100.0 * np.clip(part[name], -0.15, 0.15),
+                s=8.0 + 300.0 * np.minimum(part[name].abs(), 0.2),
+                marker=marker,
+                cmap="PuOr",
+                vmin=-15.0,
+                vmax=15.0,
+                edgecolors="0.3",
+                linewidths=0.3,
+            )
         ax.set(xscale="log", yscale="log", ylabel="length over D_h")
         ax.set_title(f"{title}: fast model less march", loc="left", fontsize=10)
         ax.axvspan(2300.0, 4000.0, color="0.9", zorder=0)
-        figure.colorbar(dots, ax=ax, label="%, larger dots: further off", extend="both")
+        figure.colorbar(dots, ax=ax, label="%; point up: fast is more", extend="both")
     ax.set_xlabel("Reynolds number on hydraulic diameter (grey: 2300 to 4000)")
     figure.savefig(path, dpi=150)
 
