@@ -76,14 +76,14 @@ def _draw(figure: Figure, ax: Axes, study: TripStudy, chart: TripMap, levels: Fl
 
     x, y = chart.columns[1], _shown(chart)
     gain = np.ma.masked_invalid(100.0 * chart.gain)
+    ax.set_xscale("log")
+    ax.set_yscale("log")
     filled = ax.contourf(x, y, gain, levels=levels, colors=_colours(levels), extend="both")
     thin = ax.contour(x, y, gain, levels=levels[levels != 0.0], colors=ink.GREY, linewidths=0.6)
     for label in ax.clabel(thin, fmt=lambda value: f"{value:+.0f} %", fontsize=7.5, colors=ink.INK):
         label.set_path_effects([withStroke(linewidth=2.0, foreground="white")])
     if gain.min() < 0.0 < gain.max():
         ax.contour(x, y, gain, levels=[0.0], colors=ink.INK, linewidths=2.2)
-    ax.set_xscale("log")
-    ax.set_yscale("log")
     for side, shown in (("x", x), ("y", y)):
         _ticks(ax.xaxis if side == "x" else ax.yaxis, shown)
     ax.grid(False)
@@ -92,7 +92,9 @@ def _draw(figure: Figure, ax: Axes, study: TripStudy, chart: TripMap, levels: Fl
     regions = _regions(ax, chart, x, y)
     designs = _designs(ax, study, chart)
     _second_axis(ax, study, chart)
-    _key(figure, ax, filled, [*regions, *designs])
+    if chart is study.maps[0]:
+        _bar(figure, ax, filled)
+    _key(ax, [*regions, *designs], 0.4 if chart is study.maps[0] else 1.0)
 
 
 def _shown(chart: TripMap) -> Floats:
@@ -255,17 +257,12 @@ def _second_axis(ax: Axes, study: TripStudy, chart: TripMap) -> None:
     _ticks(top.xaxis, chart.columns[1] * each)
 
 
-def _key(figure: Figure, ax: Axes, filled: Any, entries: list[tuple[Any, str]]) -> None:
-    """Colour bar and explanations to the right of a map."""
+def _bar(figure: Figure, ax: Axes, filled: Any) -> None:
+    """The colour bar, which holds for all maps, beside the first."""
     box = ax.get_position(original=True)
-    wide = box.width * ink.WIDTH_MM
-    bar = ink.panel(
-        figure,
-        box.x0 * ink.WIDTH_MM + wide + 5.0,
-        box.y0 * ink.height_mm(figure) + 0.46 * _MAP_MM,
-        4.0,
-        0.45 * _MAP_MM,
-    )
+    left = (box.x0 + box.width) * ink.WIDTH_MM + 5.0
+    bottom = box.y0 * ink.height_mm(figure) + 0.48 * _MAP_MM
+    bar = ink.panel(figure, left, bottom, 4.0, 0.44 * _MAP_MM)
     figure.colorbar(
         filled,
         cax=bar,
@@ -275,9 +272,13 @@ def _key(figure: Figure, ax: Axes, filled: Any, entries: list[tuple[Any, str]]) 
     )
     bar.minorticks_off()
     bar.set_title("gain", fontsize=8.5, loc="left")
+
+
+def _key(ax: Axes, entries: list[tuple[Any, str]], top: float) -> None:
+    """What hatches and markers mean, to the right of a map."""
     if entries:
         handles, labels = zip(*entries, strict=True)
-        ink.legend(ax, handles, [_folded(label) for label in labels], 0.38)
+        ink.legend(ax, handles, [_folded(label) for label in labels], top)
 
 
 def _folded(label: str) -> str:

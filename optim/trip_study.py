@@ -328,7 +328,7 @@ def _bare(entry: Entry, front: Front) -> pd.DataFrame:
 def _envelope(
     case: Case, merit: Aim, entry: Entry, table: pd.DataFrame, winners: Winners
 ) -> tuple[Floats, Floats]:
-    """Fan powers of a way's best designs and the most merit up to each of them, rising."""
+    """Fan powers and merit of a way's best designs, both rising: none that a cheaper one beats."""
     from problems.trips import merit_values
 
     named = [
@@ -343,8 +343,10 @@ def _envelope(
         figures = table[named_of(merit.outcome).column].to_numpy(dtype=float)
         powers = np.concatenate([powers, table[named_of(POWER).column].to_numpy(dtype=float)])
         worth = np.concatenate([worth, merit_values(case, {merit.outcome: figures})])
-    order = np.argsort(powers, kind="stable")
-    return powers[order], np.maximum.accumulate(worth[order])
+    order = np.lexsort((-worth, powers))
+    powers, worth = powers[order], worth[order]
+    so_far = np.maximum.accumulate(np.concatenate([[-np.inf], worth[:-1]]))
+    return powers[worth > so_far], worth[worth > so_far]
 
 
 def _at(powers: Floats, envelope: tuple[Floats, Floats]) -> Floats:
