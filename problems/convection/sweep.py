@@ -411,7 +411,7 @@ def _behind_onset(
     weight = sustains[index, None]
     fractions, weights, collect = _gauss(_IN_TRANSITION)
     xi_end = np.minimum((columns.re_l - re_t) / length, _XI_END)
-    gamma = transition.intermittency(xi_end * _and_outlet(fractions, 1.0))
+    gamma = transition.mixing_weight(xi_end * _and_outlet(fractions, 1.0))
     run = length * xi_end
     re_x = re_t + run * _and_outlet(fractions, 1.0)
     inside = slice(0, fractions.size)
