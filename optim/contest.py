@@ -17,7 +17,7 @@ from optim.front import Front
 from optim.picks import column, designs
 from optim.search import search
 from optim.task import values
-from problems.problem import Aim, Evaluation, Floats, Limit, Problem
+from problems.problem import Aim, Bools, Evaluation, Floats, Limit, Problem
 
 FRONT_EVALUATIONS, EVALUATIONS = 40_000, 6000
 _SLACK = 1e-9  # of a figure of the reference: room for its last digits
@@ -203,18 +203,24 @@ def _best(
 def _leader(entry: Entry, stated: Problem, rows: Floats) -> Design | None:
     """The best of `rows` (n, number of variables) by the one aim of `stated` within its limits."""
     given = stated.evaluate(rows)
-    sound = given.possible.copy()
-    for limit in stated.limits:
-        figures = values(given, limit.outcome)
-        low = -np.inf if limit.at_least is None else limit.at_least
-        high = np.inf if limit.at_most is None else limit.at_most
-        sound &= (figures >= low) & (figures <= high)
+    sound = feasible(stated, given)
     if not sound.any():
         return None
     aim = stated.aims[0]
     figures = values(given, aim.outcome) * (-1.0 if aim.sense == "most" else 1.0)
     best = int(np.argmin(np.where(sound, figures, np.inf)))
     return next(_each(entry, rows[[best]], stated.evaluate(rows[[best]])))
+
+
+def feasible(problem: Problem, given: Evaluation) -> Bools:
+    """Which of the designs evaluated are possible and meet the limits of `problem`."""
+    sound = given.possible.copy()
+    for limit in problem.limits:
+        figures = values(given, limit.outcome)
+        low = -np.inf if limit.at_least is None else limit.at_least
+        high = np.inf if limit.at_most is None else limit.at_most
+        sound &= (figures >= low) & (figures <= high)
+    return sound
 
 
 def _met(design: Design, limit: Limit) -> bool:

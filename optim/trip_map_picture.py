@@ -82,6 +82,8 @@ def _draw(figure: Figure, ax: Axes, study: TripStudy, chart: TripMap, levels: Fl
     thin = ax.contour(x, y, gain, levels=levels[levels != 0.0], colors=ink.GREY, linewidths=0.6)
     for label in ax.clabel(thin, fmt=lambda value: f"{value:+.0f} %", fontsize=7.5, colors=ink.INK):
         label.set_path_effects([withStroke(linewidth=2.0, foreground="white")])
+        across, up = ax.transAxes.inverted().transform(ax.transData.transform(label.get_position()))
+        label.set_visible(0.04 < across < 0.96 and 0.03 < up < 0.97)
     if gain.min() < 0.0 < gain.max():
         ax.contour(x, y, gain, levels=[0.0], colors=ink.INK, linewidths=2.2)
     for side, shown in (("x", x), ("y", y)):

@@ -11,10 +11,20 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
-import pandas as pd
 
-from optim.contest import Criterion, Design, Entry, Told, Winners, fronts, hold, spread_along
+from optim.contest import (
+    Criterion,
+    Design,
+    Entry,
+    Told,
+    Winners,
+    feasible,
+    fronts,
+    hold,
+    spread_along,
+)
 from optim.front import Front
+from optim.picks import column, designs
 from problems.problem import Aim, Floats
 
 if TYPE_CHECKING:
@@ -307,42 +317,50 @@ def _curve(
     """Fan powers along the plain front and the gain of every other way at each of them."""
     if not len(known["plain"]):
         return np.empty(0), {}
-    bare = [_bare(entry, known[entry.name]) for entry in entries]
-    base = _envelope(case, merit, entries[0], pd.concat(bare), winners)
+    bare = [_without(entries[0], merit, front) for front in known.values() if len(front)]
+    base = _envelope(case, merit, "plain", winners, bare)
     powers = np.geomspace(base[0][0], base[0][-1], _CURVE) if base[0][0] > 0.0 else base[0]
     plain = _at(powers, base)
     gains = {}
     for entry in entries[1:]:
-        other = _envelope(case, merit, entry, known[entry.name].table, winners)
+        found = _of_front(entry, merit, known[entry.name])
+        other = _envelope(case, merit, entry.name, winners, [found])
         reached = _at(powers, other) if len(other[0]) else plain
         gains[entry.name] = np.maximum(reached / plain - 1.0, 0.0)
     return powers, gains
 
 
-def _bare(entry: Entry, front: Front) -> pd.DataFrame:
-    """The designs of a front without a wire: plain ones, whichever search found them."""
-    height = entry.problem.outcome("trip_height").column
-    return front.table[front.table[height] == 0.0]
+def _without(base: Entry, merit: Aim, front: Front) -> tuple[Floats, Floats]:
+    """Fan powers and merit outcome of the designs of any front with their wires left away."""
+    rows = designs(front, base.problem)
+    given = base.problem.evaluate(rows)
+    sound = feasible(base.problem, given)
+    return given.outcomes[POWER][sound], given.outcomes[merit.outcome][sound]
+
+
+def _of_front(entry: Entry, merit: Aim, front: Front) -> tuple[Floats, Floats]:
+    return column(front, entry.problem, POWER), column(front, entry.problem, merit.outcome)
 
 
 def _envelope(
-    case: Case, merit: Aim, entry: Entry, table: pd.DataFrame, winners: Winners
+    case: Case,
+    merit: Aim,
+    name: str,
+    winners: Winners,
+    found: Sequence[tuple[Floats, Floats]],
 ) -> tuple[Floats, Floats]:
     """Fan powers and merit of a way's best designs, both rising: none that a cheaper one beats."""
     from problems.trips import merit_values
 
     named = [
         won
-        for (_, key, name), won in winners.items()
-        if name == entry.name and won.entry == name and key in (AT_POWER, AT_MERIT)
+        for (_, key, of), won in winners.items()
+        if of == name and won.entry == name and key in (AT_POWER, AT_MERIT)
     ]
-    powers = np.array([won[POWER] for won in named])
-    worth = np.array([_worth(case, merit, won) for won in named])
-    if len(table):
-        named_of = entry.problem.outcome
-        figures = table[named_of(merit.outcome).column].to_numpy(dtype=float)
-        powers = np.concatenate([powers, table[named_of(POWER).column].to_numpy(dtype=float)])
-        worth = np.concatenate([worth, merit_values(case, {merit.outcome: figures})])
+    own = [np.array([won[outcome] for won in named]) for outcome in (POWER, merit.outcome)]
+    powers = np.concatenate([own[0], *(one[0] for one in found)])
+    figures = np.concatenate([own[1], *(one[1] for one in found)])
+    worth = merit_values(case, {merit.outcome: figures})
     order = np.lexsort((-worth, powers))
     powers, worth = powers[order], worth[order]
     so_far = np.maximum.accumulate(np.concatenate([[-np.inf], worth[:-1]]))

@@ -86,6 +86,8 @@ def test_a_quantity_is_read_in_si(text, unit, wanted):
         (True, "m"),
         (None, "m"),
         (["3 mm"], "m"),
+        ("NAN", "1"),
+        ("3 A0", "1"),
         ({}, "m"),
     ],
 )
