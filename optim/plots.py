@@ -20,7 +20,7 @@ from optim.profiles import profile_picture
 from optim.runs import PICTURES, free_name, writable
 from optim.sketches import sketch_picture
 from optim.text import words
-from problems.problem import Aim, Floats, Outcome, Problem, Variable
+from problems.problem import Aim, Bools, Floats, Outcome, Problem, Variable
 from problems.units import format_value
 
 if TYPE_CHECKING:
@@ -291,7 +291,16 @@ def _along(
         for end in convert(ends):
             ax.axhline(end, color=ink.GREY, lw=0.9, ls=(0, (5, 3)), label="searched range")
     ink.margins(ax, "y", convert(ends), 0.08)
+    values = np.where(_counts(front, problem, quantity), values, np.nan)
     _scatter(ax, front, x, convert(values), np.array(0.25 * _largest(front)))
+
+
+def _counts(front: Front, problem: Problem, quantity: Variable | Outcome) -> Bools:
+    """Which designs a quantity means anything in: not the place of a wire that is not there."""
+    needed = getattr(quantity, "only_with", None)
+    named = [variable for variable in problem.variables if variable.name == needed]
+    without = [_values(front, problem, variable) == 0.0 for variable in named]
+    return ~np.any(without, axis=0) if without else np.ones(len(front), dtype=np.bool_)
 
 
 def _strip_legend(figure: Figure, ax: Axes, top: float) -> None:

@@ -273,9 +273,17 @@ def _side_by_side(shown: Sequence[Account], problem: Problem) -> str:
         values = np.array([one[item.column] for one in shown], dtype=float)
         label, convert = axis_unit("" if item.unit == "1" else item.unit, values)
         digits = [format_number(float(f"{value:.3g}")) for value in convert(values)]
-        rows.append((words(item.name), label, *digits))
+        said = zip(digits, shown, strict=True)
+        told = [number if _counts(item, one, problem) else "-" for number, one in said]
+        rows.append((words(item.name), label, *told))
     rows.append(("sort", "", *(one["group"] for one in shown)))
     return table(rows, right=range(2, 2 + len(shown)))
+
+
+def _counts(item: Any, one: Account, problem: Problem) -> bool:
+    """Whether a quantity means anything in a design: not the place of a wire that is not there."""
+    needed = getattr(item, "only_with", None)
+    return all(one[v.column] != 0.0 for v in problem.variables if v.name == needed)
 
 
 def _told_of(shown: Sequence[Account], problem: Problem) -> list[Any]:

@@ -60,7 +60,8 @@ def found(
         masks[ROUGH] = surface.re_rough > 100.0
     if surface.re_d is not None:
         masks[BAND] = (surface.re_d > 2300.0) & (surface.re_d < 4000.0)
-        masks[DENSE] = outcomes["pressure_drop"] > 0.05 * case.fluid.pressure
+        if fluid.phase == "gas":
+            masks[DENSE] = outcomes["pressure_drop"] > 0.05 * case.fluid.pressure
         if case.plates.surface.temperature is not None:
             masks[SPENT] = walked.units > np.log(100.0)
     return masks

@@ -134,7 +134,7 @@ def _caption(given: dict[str, float]) -> str:
     parts = [f"length {1e3 * given['length']:.0f} mm"]
     if "gap" in given:
         parts.append(f"gap {1e3 * given['gap']:.1f} mm")
-        parts.append(f"{given['count']:.1f} plates")
+        parts.append(f"{round(given['count'], 1):g} plates")
     parts.append(f"{given['velocity']:.3g} m/s")
     if given["trip_height"] > 0.0:
         wire, place = 1e3 * given["trip_height"], 1e3 * given["trip_position"]

@@ -354,6 +354,13 @@ def test_search_prints_designs_from_the_least_power_to_the_most_heat(run, case):
     assert found["run"] == "here"
 
 
+def test_the_place_of_a_wire_that_is_not_there_is_not_told(run, case):
+    code, out, _ = run("search", "lamp-stack", *FEW)
+    assert code == 0
+    told = {line[:16].strip(): line.split()[2:] for line in out.splitlines()}
+    assert set(told["trip share"]) == {"-"}
+
+
 def test_the_same_seed_gives_the_same_front_and_another_seed_another(run, case):
     for out, seed in (("one", "4"), ("two", "4"), ("three", "5")):
         assert run("search", case, *FEW, "--seed", seed, "--out", out)[0] == 0

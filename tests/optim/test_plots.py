@@ -281,3 +281,19 @@ def test_drawing_leaves_the_users_settings_alone(problem, front):
     with mpl.rc_context({"font.size": 17.0}):
         plots.front_picture(front, problem)
         assert mpl.rcParams["font.size"] == 17.0
+
+
+def test_the_place_of_a_wire_that_is_not_there_is_not_drawn():
+    problem = build(load_case("lamp-stack"))
+    front = search(problem, seed=1, evaluations=3000, size=40)
+    assert (front.table["trip_height_m"] == 0.0).all()
+    figure = plots.variables_picture(front, problem)
+    panels = {ax.get_ylabel().split(",")[0]: ax for ax in figure.axes}
+    drawn = {
+        name: sum(
+            int(np.isfinite(np.ma.filled(dots.get_offsets(), np.nan)).all(axis=1).sum())
+            for dots in panels[name].collections
+        )
+        for name in ("trip share", "gap")
+    }
+    assert drawn == {"trip share": 0, "gap": len(front)}
