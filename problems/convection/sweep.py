@@ -14,6 +14,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from problems.convection import entrance, flat_plate, passage, transition
+from problems.convection.scatter import Scatter, ScatteredLaminar
 from problems.convection.transition import Onset, Wire
 
 Floats = NDArray[np.float64]
@@ -32,13 +33,14 @@ class Surface:
     `re_rough` U k_s/nu, None if smooth; `natural` the onset Re_x without a wire; `turbulence` in
     percent; `wire_x`, `wire_k` U x/nu and U k/nu of a wire, None without; `wires` of them stand
     in a row `wire_spacing` apart, `facing` of them (0 to 2) in one section of the gap; `grit`
-    makes them strips of grit; `flux` is for uniform wall flux instead of wall temperature.
+    makes them strips of grit; `flux` is for uniform wall flux instead of wall temperature;
+    `scatter` multiplies the laws.
     """
 
     re_l: Floats
     pr: Floats
-    natural: float
-    turbulence: float
+    natural: Floats | float
+    turbulence: Floats | float
     re_d: Floats | None = None
     re_rough: Floats | None = None
     wire_x: Floats | None = None
@@ -47,8 +49,9 @@ class Surface:
     wires: int = 1
     facing: int = 2
     grit: bool = False
-    drag_coefficient: float = 1.0
+    drag_coefficient: Floats | float = 1.0
     flux: bool = False
+    scatter: Scatter | None = None
 
     def part(self, index: NDArray[np.intp]) -> Surface:
         """The same for some of the designs, as columns of shape (k, 1) for use with stations."""
@@ -61,6 +64,7 @@ class Surface:
             wire_x=None,
             wire_k=None,
             wire_spacing=None,
+            scatter=None if self.scatter is None else self.scatter.part(index),
         )
 
 
@@ -311,7 +315,10 @@ class _Totals:
 
 def laminar_layer(surface: Surface) -> Laminar:
     """The laminar layer on this sort of surface."""
-    return PlateLaminar(surface) if surface.re_d is None else PassageLaminar(surface)
+    layer = PlateLaminar(surface) if surface.re_d is None else PassageLaminar(surface)
+    if surface.scatter is None:
+        return layer
+    return ScatteredLaminar(layer, surface.scatter, surface.flux)
 
 
 def laminar_thickness(re_x: Floats, re_d: Floats | None) -> Floats:
@@ -503,6 +510,15 @@ def mixed(
 
 def turbulent(surface: Surface, re_x: Floats, re_theta: Floats) -> tuple[Floats, Floats]:
     """Local cf and St of the turbulent layer, in a passage joined to developed flow."""
+    cf, stanton = _turbulent(surface, re_x, re_theta)
+    scatter = surface.scatter
+    if scatter is None:
+        return cf, stanton
+    return cf * scatter.turbulent_friction, stanton * scatter.turbulent_heat
+
+
+def _turbulent(surface: Surface, re_x: Floats, re_theta: Floats) -> tuple[Floats, Floats]:
+    """The same as the laws have it, without their scatter."""
     re_theta = np.maximum(re_theta, _THINNEST)
     cf = flat_plate.turbulent_friction(re_theta)
     stanton = flat_plate.turbulent_stanton(cf, surface.pr)

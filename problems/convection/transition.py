@@ -112,7 +112,7 @@ class Wire:
     re_theta: Floats
     blockage: Floats
     on_plate: Floats
-    drag_coefficient: float
+    drag_coefficient: Floats | float
     grit: bool = False
 
     @property
@@ -204,7 +204,7 @@ class Onset:
     forced: Floats
 
 
-def onset(natural: Floats, turbulence: float, wires: Sequence[Wire]) -> Onset:
+def onset(natural: Floats, turbulence: Floats | float, wires: Sequence[Wire]) -> Onset:
     """Onset of transition from the natural one, the turbulence level [%] and wires in a row.
 
     A wire that trips and holds sets the onset where it stands. One too small moves it upstream,
@@ -215,7 +215,7 @@ def onset(natural: Floats, turbulence: float, wires: Sequence[Wire]) -> Onset:
     re_x, forced = natural, np.zeros_like(natural)
     for wire in wires:
         noisy = np.hypot(turbulence, wire.added_turbulence())
-        early = natural * onset_re_x(noisy) / onset_re_x(np.array([turbulence]))
+        early = natural * onset_re_x(noisy) / onset_re_x(np.atleast_1d(turbulence))
         moved = np.minimum(re_x, _soft_most(early, wire.re_x))
         ahead = 1.0 - smooth_step(wire.re_x / re_x, 0.9, 1.0)
         sets = wire.trips() * wire.holds() * ahead

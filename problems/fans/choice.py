@@ -76,6 +76,29 @@ def choose_fixed(
     return _choice(curves, rows, fixed_speed(curves, rows, system, density, drive, least))
 
 
+def hold_variable(
+    curves: Curves,
+    rows: Ints,
+    flow: Floats,
+    pressure: Floats,
+    density: Floats,
+    drive: Drive = VARIABLE,
+) -> Choice:
+    """The same fans `rows` (n,) at another duty, their speed following it."""
+    return _choice(curves, rows, variable_speed(curves, rows, flow, pressure, density, drive))
+
+
+def hold_fixed(
+    curves: Curves,
+    rows: Ints,
+    system: System | SampledSystem,
+    density: Floats,
+    drive: Drive = FIXED,
+) -> Choice:
+    """The same fans `rows` (n,) on another system, at their tested speed."""
+    return _choice(curves, rows, fixed_speed(curves, rows, system, density, drive))
+
+
 def _choice(curves: Curves, rows: Ints, duty: Duty) -> Choice:
     return Choice(rows, curves.fan[rows], curves.count[rows], duty)
 

@@ -16,8 +16,14 @@ from numpy.typing import NDArray
 from problems import costs
 from problems.case import Case
 from problems.fans.catalogue import Catalogue, read_catalogue
-from problems.fans.choice import Choice, choose_fixed, choose_variable
-from problems.fans.curves import Curves, curves
+from problems.fans.choice import (
+    Choice,
+    choose_fixed,
+    choose_variable,
+    hold_fixed,
+    hold_variable,
+)
+from problems.fans.curves import Curves, Ints, curves
 from problems.fans.systems import SampledSystem, System
 from problems.fans.terms import Drive
 from problems.problem import Floats
@@ -85,13 +91,18 @@ class Blower:
             "fan_best_share": duty.best_share,
         }
 
-    def chosen(self, outcomes: Outcomes) -> Choice | None:
-        """The fan of each design whose velocity is given; None without a catalogue."""
+    def chosen(self, outcomes: Outcomes, rows: Ints | None = None) -> Choice | None:
+        """The fan of each design whose velocity is given; None without a catalogue.
+
+        `rows` (n,) are the fans where they have been bought already.
+        """
         if self.catalogue is None:
             return None
         flow = outcomes["flow_rate"]
         density = outcomes["mass_flow"] / flow
         pressure = outcomes["system_pressure"]
+        if rows is not None:
+            return hold_variable(self.curves, rows, flow, pressure, density, self.drive)
         return choose_variable(self.curves, flow, pressure, density, self.drive)
 
     def met(
@@ -101,7 +112,8 @@ class Blower:
 
         The velocity in `given` is the least that is wanted. `balance` gives the outcomes of
         settings; the stack is read at several velocities of its range, and the third item tells
-        where the duty point lies between them.
+        where the duty point lies between them. Fans that have been bought already ("fan_row" in
+        `given`) stay, whatever they deliver.
         """
         velocities = np.geomspace(*_ends(self.case), _READINGS)
         read = [balance({**given, "velocity": np.full_like(given["gap"], v)}) for v in velocities]
@@ -110,7 +122,11 @@ class Blower:
         density = read[0]["mass_flow"] / read[0]["flow_rate"]
         system = SampledSystem(flow, drop)
         least = given["velocity"] * flow[0] / velocities[0]
-        choice = choose_fixed(self.curves, system, density, self.drive, least)
+        rows = bought(given)
+        if rows is None:
+            choice = choose_fixed(self.curves, system, density, self.drive, least)
+        else:
+            choice = hold_fixed(self.curves, rows, system, density, self.drive)
         between = system.covers(choice.duty.flow)
         velocity = choice.duty.flow * velocities[0] / flow[0]
         return np.clip(velocity, velocities[0], velocities[-1]), choice, between
@@ -139,6 +155,11 @@ class Blower:
         names = np.array([fan.name for fan in self.catalogue.fans])[choice.fan]
         many = np.char.add(np.char.add(choice.count.astype(int).astype(str), " x "), names)
         return {"fan": np.asarray(np.where(choice.count > 1, many, names), dtype=np.str_)}
+
+
+def bought(given: Mapping[str, Floats]) -> Ints | None:
+    """The fans that designs have already, None where they are to be chosen."""
+    return given["fan_row"].astype(np.intp) if "fan_row" in given else None
 
 
 def reasons_of(choice: Choice) -> NDArray[np.str_]:

@@ -63,9 +63,8 @@ def _turbulent_heat(walk: Walk) -> Bools:
 
 
 def _onset(walk: Walk) -> Bools:
-    level = walk.surface.turbulence
-    share = np.full(walk.surface.re_l.shape, level < 0.3 or level > 10.0)
-    return share & (walk.sweep.onset.natural < walk.surface.re_l)
+    level = np.asarray(walk.surface.turbulence)
+    return ((level < 0.3) | (level > 10.0)) & (walk.sweep.onset.natural < walk.surface.re_l)
 
 
 def _wire(walk: Walk) -> Bools:

@@ -14,14 +14,23 @@ from problems.convection import passage
 from problems.convection.fluids import Fluid
 from problems.kinds.blown import Blower
 from problems.kinds.plate import walls_under_flux
-from problems.kinds.swept import Settings, Walked, walk
+from problems.kinds.swept import Settings, Walked, inlet_of, walk
 
 Floats = NDArray[np.float64]
+
+_LEAST_GAP = 0.05  # of the gap as drawn that is left however wrong it is made
 
 
 def complete(case: Case, given: dict[str, Floats]) -> dict[str, Floats]:
     """The settings with height and count, of which the case gives one."""
     pitch = given["gap"] + given["thickness"]
+    if "gap_change" in given:  # built with as many plates, higher or lower than drawn
+        drawn = complete(case, {k: v for k, v in given.items() if k != "gap_change"})
+        gap = np.maximum(given["gap"] + given["gap_change"], _LEAST_GAP * given["gap"])
+        height = drawn["count"] * (gap + given["thickness"])
+        # the fan is set to the flow that was asked for
+        velocity = given["velocity"] * given["gap"] / gap
+        return {**drawn, "gap": gap, "height": height, "velocity": velocity}
     if case.plates.count is not None:
         count = np.full_like(pitch, float(case.plates.count))
         return {**given, "count": count, "height": count * pitch}
@@ -33,16 +42,17 @@ def balance(
     case: Case, fluid: Fluid, given: Settings, blower: Blower
 ) -> tuple[Walked, dict[str, Floats]]:
     """Walk along the gaps and balance heat, force, pressure and power; outcomes by name."""
-    inlet, wall = case.fluid.temperature, case.plates.surface.temperature
+    wall = case.plates.surface.temperature
     flux = case.plates.surface.flux or 0.0
 
     def film_of(walked: Walked, some: Settings) -> Floats:
         if wall is not None:
             units = np.maximum(walked.units, 1e-12)
-            below = (wall - inlet) * -np.expm1(-units) / units
-            return wall - 0.5 * below
-        return inlet + 0.5 * _rise(walked, some, flux) + 0.5 * flux / walked.h
+            below = (wall - inlet_of(case, some)) * -np.expm1(-units) / units
+            return wall - (1.0 - 0.5 * walked.film_share) * below
+        return inlet_of(case, some) + 0.5 * _rise(walked, some, flux) + 0.5 * flux / walked.h
 
+    inlet = inlet_of(case, given)
     start = np.full_like(given["gap"], inlet if wall is None else wall - 0.4 * (wall - inlet))
     walked = walk(case, fluid, given, film_of, start)
     if wall is not None:
@@ -50,9 +60,9 @@ def balance(
         coldest = hottest = outlet_wall = np.full_like(outlet, wall)
     else:
         outlet = inlet + _rise(walked, given, flux)
-        coldest, hottest = walls_under_flux(walked, inlet, flux)
+        coldest, hottest = walls_under_flux(walked, given, inlet, flux)
         local = walked.sweep.outlet_stanton * walked.flux_density * walked.properties.cp
-        outlet_wall = outlet + flux / local
+        outlet_wall = outlet + flux * (1.0 / local + given.get("fouling", 0.0))
     passages = given["count"] * given["width"]
     mass_flow = walked.flux_density * given["gap"] * passages
     flow_rate = given["velocity"] * given["gap"] * passages
@@ -91,9 +101,9 @@ def _porosity(given: Settings) -> Floats:
     return given["gap"] / (given["gap"] + given["thickness"])
 
 
-def _densities(case: Case, fluid: Fluid, outlet: Floats) -> tuple[Floats, Floats]:
+def _densities(case: Case, fluid: Fluid, given: Settings, outlet: Floats) -> tuple[Floats, Floats]:
     """Density at the inlet and at the outlet [kg/m3]."""
-    inlet_rho = fluid.at(np.array([case.fluid.temperature])).rho
+    inlet_rho = fluid.at(np.atleast_1d(inlet_of(case, given))).rho
     return inlet_rho, fluid.at(np.clip(outlet, fluid.low, fluid.high)).rho
 
 
@@ -103,7 +113,7 @@ def _spent(
     """Total pressure [Pa] that the fan has to make up for: static drop and what is left of the
     dynamic head of the ducts, whose density changes. A still plenum upstream has no head.
     """
-    inlet_rho, outlet_rho = _densities(case, fluid, outlet)
+    inlet_rho, outlet_rho = _densities(case, fluid, given, outlet)
     porosity = np.ones_like(drop) if case.plates.ends == "none" else _porosity(given)
     head = 0.5 * (walked.flux_density * porosity) ** 2
     arriving = 0.0 if case.plates.feed == "plenum" else head / inlet_rho
@@ -118,7 +128,7 @@ def _drops(
 
     Fed from a still plenum the stream has to be brought to the velocity of that duct first.
     """
-    inlet_rho, outlet_rho = _densities(case, fluid, outlet)
+    inlet_rho, outlet_rho = _densities(case, fluid, given, outlet)
     square = walked.flux_density**2
     dynamic = 0.5 * square / walked.properties.rho
     walls = 2.0 * given["length"] / given["gap"]

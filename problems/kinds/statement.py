@@ -19,7 +19,7 @@ from problems.convection.flat_plate import smooth_step
 from problems.convection.fluids import Fluid, FluidError
 from problems.fans.choice import Choice
 from problems.kinds import cautions, laws, pictures, plate, stack, words
-from problems.kinds.blown import Blower, reasons_of
+from problems.kinds.blown import Blower, bought, reasons_of
 from problems.kinds.outcomes import OPTIONAL, OUTCOMES, SETTINGS
 from problems.kinds.swept import CHUNK, Settings, Walked, settings, variables
 from problems.problem import Evaluation, Floats, Outcome, Problem, Profile, Sketch
@@ -139,8 +139,11 @@ class SweptPlates(Problem):
             given = {**given, "velocity": velocity}
         walked, outcomes = stack.balance(self.case, self.fluid, given, self.blower)
         if choice is None:
-            choice = self.blower.chosen(outcomes)
+            choice = self.blower.chosen(outcomes, bought(given))
         outcomes |= self.blower.powered(outcomes, choice)
+        if "efficiency" in given:
+            for name in ("fan_power", "specific_fan_power"):
+                outcomes[name] = outcomes[name] / given["efficiency"]
         outcomes |= self.blower.priced(outcomes, choice)
         return self._batch(given, walked, outcomes, choice, met)
 

@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 from problems.case import Case, Span
 from problems.convection import transition
 from problems.convection.fluids import Fluid, Properties
+from problems.convection.scatter import Scatter
 from problems.convection.sweep import Surface, Sweep, one_wall_wired, sweep
 from problems.problem import Variable
 from problems.tables import Trip
@@ -35,7 +36,8 @@ class Walked:
 
     `flux_density` is rho u of the nominal velocity [kg/m2s], `speed` that velocity at film
     density; `h` the mean coefficient; `units` the exponent of the approach to the wall
-    temperature (NTU, 0 on a plate in a free stream); temperatures in K.
+    temperature (NTU, 0 on a plate in a free stream); temperatures in K. `film_share` is the part of
+    the difference between wall and stream that is left to the film by what fouls the wall.
     """
 
     surface: Surface
@@ -46,6 +48,7 @@ class Walked:
     speed: Floats
     h: Floats
     units: Floats
+    film_share: Floats
 
 
 def spans(case: Case) -> dict[str, tuple[Span, str]]:
@@ -132,6 +135,32 @@ def free_stream_turbulence(case: Case) -> tuple[float, float]:
     return level, float(transition.onset_re_x(np.array([level]))[0])
 
 
+# What may deviate from the case, design by design, beside the settings: see `sampled`
+LAWS = ("laminar_friction", "laminar_heat", "turbulent_friction", "turbulent_heat")
+
+
+def inlet_of(case: Case, given: Settings) -> Floats | float:
+    """Temperature [K] of the stream as it arrives at each design."""
+    return given.get("inlet", case.fluid.temperature)
+
+
+def _stream_of(case: Case, given: Settings) -> tuple[Floats | float, Floats | float]:
+    """Turbulence level [%] and natural onset Re_x [-] that each design meets."""
+    level, natural = free_stream_turbulence(case)
+    if "turbulence" in given:
+        levels = given["turbulence"]
+        return levels, transition.onset_re_x(levels) * given.get("onset_factor", 1.0)
+    return level, natural * given["onset_factor"] if "onset_factor" in given else natural
+
+
+def _scatter_of(given: Settings) -> Scatter | None:
+    """Factors on the laws at each design, None where every law is taken as it is."""
+    if not any(name in given for name in LAWS):
+        return None
+    ones = np.ones_like(given["length"])
+    return Scatter(*(given.get(name, ones) for name in LAWS))
+
+
 def walk(
     case: Case,
     fluid: Fluid,
@@ -178,7 +207,7 @@ def _wired(
         wires=trip.wires,
         facing=1 if one or trip.facing == "staggered" else 2,
         grit=trip.sort == "grit",
-        drag_coefficient=trip.drag_coefficient,
+        drag_coefficient=given.get("wire_drag", trip.drag_coefficient),
     )
     walked = sweep(surface)
     if one and not (case.kind == "plate" and case.plates.faces == 1):
@@ -208,9 +237,9 @@ def _walk_at(case: Case, fluid: Fluid, given: Settings, film: Floats) -> Walked:
     if gap is None:
         flux_density = properties.rho * given["velocity"]
     else:
-        flux_density = fluid.at(np.array([case.fluid.temperature])).rho * given["velocity"]
+        flux_density = fluid.at(np.atleast_1d(inlet_of(case, given))).rho * given["velocity"]
     per_metre = flux_density / properties.mu
-    level, natural = free_stream_turbulence(case)
+    level, natural = _stream_of(case, given)
     trip, rough = case.trip, case.plates.roughness > 0.0
     surface = Surface(
         re_l=per_metre * given["length"],
@@ -220,12 +249,17 @@ def _walk_at(case: Case, fluid: Fluid, given: Settings, film: Floats) -> Walked:
         re_d=None if gap is None else per_metre * 2.0 * gap,
         re_rough=per_metre * case.plates.roughness if rough else None,
         flux=case.plates.surface.flux is not None,
+        scatter=_scatter_of(given),
     )
     if trip is None:
         walked = sweep(surface)
     else:
         surface, walked = _wired(case, trip, surface, given, per_metre)
-    units = np.zeros_like(film) if gap is None else 2.0 * walked.stanton * given["length"] / gap
+    h = walked.stanton * flux_density * properties.cp
+    film_share = 1.0 / (1.0 + h * given.get("fouling", 0.0))
+    units = np.zeros_like(film)
+    if gap is not None:
+        units = 2.0 * walked.stanton * film_share * given["length"] / gap
     return Walked(
         surface=surface,
         sweep=walked,
@@ -233,6 +267,7 @@ def _walk_at(case: Case, fluid: Fluid, given: Settings, film: Floats) -> Walked:
         properties=properties,
         flux_density=flux_density,
         speed=flux_density / properties.rho,
-        h=walked.stanton * flux_density * properties.cp,
+        h=h,
         units=units,
+        film_share=film_share,
     )
