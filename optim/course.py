@@ -25,7 +25,7 @@ from optim.provenance import provenance
 from optim.search import Progress
 from optim.steps import MEASURED_IN_PART, Plan, State, advance, begin
 from optim.stopping import Patience, hypervolume, settled
-from optim.task import Task, task_of
+from optim.task import Task, task_of, units_of
 from problems.problem import Evaluation, Floats, Problem
 
 CHECKPOINT_EVERY = 2.0  # s
@@ -42,6 +42,7 @@ def run(
     resume: bool,
     size: int,
     stop_when_settled: bool,
+    start: Floats | None = None,
 ) -> Front:
     """What `optim.search.search` promises."""
     _check(problem, seed, evaluations, size)
@@ -55,6 +56,7 @@ def run(
         on_progress,
         checkpoint,
         Patience() if stop_when_settled else None,
+        None if start is None else units_of(problem, start),
     )
     task, state, reason = loop.run(resume)
     found = bool(len(state.kept_aims))
@@ -76,6 +78,7 @@ class _Loop:
     on_progress: Callable[[Progress], object] | None
     checkpoint: str | os.PathLike[str] | None
     patience: Patience | None
+    first: Floats | None = None  # positions (n, free) to begin with
 
     def run(self, resume: bool) -> tuple[Task, State, str]:
         """The task with its scales, the last state, and why it is the last."""
@@ -103,7 +106,7 @@ class _Loop:
             checkpoints.guard(self.checkpoint, problem)
         elif resume:
             raise RunError("resume: no checkpoint named to go on from")
-        return begin(self.task, self.plan, self.seed)
+        return begin(self.task, self.plan, self.seed, self.first)
 
     def _finished(self, task: Task, state: State) -> str | None:
         if not task.free:

@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
     from optim.front import Front
-    from problems.problem import Problem
+    from problems.problem import Floats, Problem
 
 EVALUATIONS = 100_000
 FRONT_SIZE = 300
@@ -44,6 +44,7 @@ def search(
     *,
     size: int = FRONT_SIZE,
     stop_when_settled: bool = True,
+    start: Floats | None = None,
 ) -> Front:
     """Find the designs of `problem` that nothing beats.
 
@@ -53,6 +54,7 @@ def search(
     used up. The same seed gives the same front, also when the search was broken off and taken up
     again with `resume` from the file `checkpoint`, which is written about every two seconds (and
     left for the caller to remove). A missing checkpoint means starting from the beginning.
+    `start` are designs (n, number of variables) that are tried first, beside a sample of the box.
 
     Ctrl-C ends the search and keeps what was found. If no design meets the limits the table is
     empty and `provenance["nearest_miss"]` says what stands in the way.
@@ -62,4 +64,14 @@ def search(
     """
     from optim.course import run
 
-    return run(problem, seed, evaluations, on_progress, checkpoint, resume, size, stop_when_settled)
+    return run(
+        problem,
+        seed,
+        evaluations,
+        on_progress,
+        checkpoint,
+        resume,
+        size,
+        stop_when_settled,
+        start,
+    )

@@ -82,10 +82,15 @@ class State:
     rng: Mapping[str, Any] = field(repr=False)
 
 
-def begin(task: Task, plan: Plan, seed: int) -> tuple[Task, State]:
-    """The first generation: a sample of the whole box, from which bounds get their scales."""
+def begin(task: Task, plan: Plan, seed: int, known: Floats | None = None) -> tuple[Task, State]:
+    """The first generation: a sample of the whole box, from which bounds get their scales.
+
+    Positions `known` (n, free) take the place of as many of it, of half of it at most.
+    """
     rng = np.random.default_rng(seed)
     units = first_sample(plan.first, task.free, rng)
+    if known is not None and task.free:
+        units[: plan.first // 2][: len(known)] = known[: plan.first // 2]
     given = task.problem.evaluate(task.designs(units))
     excess = raw_excess(task.bounds, given)
     task = replace(task, scales=sensible_scales(excess, given.possible, task.bounds))

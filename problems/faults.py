@@ -116,7 +116,8 @@ def _wanted(loc: tuple[str, ...], schema: type[Case]) -> str:
 
 def _unknown(loc: tuple[str, ...], schema: type[Case]) -> str:
     """Where the unknown key at `loc` may have been meant to stand."""
-    elsewhere = [p for p in paths_of(schema) if p.split(".")[-1] == loc[-1]]
+    paths = [path for path in paths_of(schema) if not path.startswith("uncertain.")]
+    elsewhere = [path for path in paths if path.split(".")[-1] == loc[-1]]
     if elsewhere:
         return f"unknown key here; it belongs to {' or '.join(elsewhere)}"
     return nearest(loc[-1], keys_of(_inner(loc, schema))).replace("unknown", "unknown key", 1)

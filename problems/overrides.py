@@ -51,12 +51,14 @@ def _path(name: str, known: list[str]) -> tuple[str | None, str]:
     parts = name.split(".")
     if name in known or (parts[0] == "limits" and parts[2:] in (["at_least"], ["at_most"])):
         return name, ""
-    fitting = [path for path in known if name in (path.split(".")[-1], _joined(path))]
+    short = [path for path in known if not path.startswith("uncertain.")]
+    fitting = [path for path in short if name in (path.split(".")[-1], _joined(path))]
     if len(fitting) == 1:
         return fitting[0], ""
     if fitting:
         return None, f"could be {' or '.join(fitting)}; give one of these"
-    names = {alias: path for path in known for alias in (path.split(".")[-1], _joined(path), path)}
+    names = {alias: path for path in short for alias in (path.split(".")[-1], _joined(path))}
+    names |= {path: path for path in known}
     near = difflib.get_close_matches(name, list(names), n=1, cutoff=0.5)
     if near:
         return None, f'unknown; the nearest is "{near[0]}" ({names[near[0]]})'

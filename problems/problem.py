@@ -7,13 +7,14 @@ picture and knows no search; `optim` in turn knows nothing of heat, only what st
 from __future__ import annotations
 
 from abc import ABC, abstractmethod
-from collections.abc import Mapping
+from collections.abc import Collection, Mapping
 from dataclasses import dataclass, field
 from typing import Literal
 
 import numpy as np
 from numpy.typing import NDArray
 
+from problems.uncertain import Sampled, Uncertain
 from problems.units import suffix
 
 Floats = NDArray[np.float64]
@@ -177,6 +178,7 @@ class Problem(ABC):
     laws: tuple[Law, ...]
     notes: tuple[str, ...]
     source: str  # the case as given, for the run folder
+    uncertain: tuple[Uncertain, ...] = ()  # inputs that are not known exactly
 
     @abstractmethod
     def evaluate(self, designs: Floats) -> Evaluation:
@@ -196,6 +198,27 @@ class Problem(ABC):
     @abstractmethod
     def remarks(self, design: Floats) -> tuple[str, ...]:
         """Plain sentences about one design of shape (number of variables,): regimes, verdicts."""
+
+    def sampled(
+        self,
+        designs: Floats,
+        draws: Mapping[str, Floats],
+        names: Collection[str] | None = None,
+    ) -> Sampled:
+        """What designs of shape (n, number of variables) give at draws of the uncertain inputs.
+
+        `draws` holds for some of `uncertain`, by name, m values each, shape (m,); the others are
+        taken as nominal. Every design meets the same draws. `names` are the outcomes and settings
+        that are wanted, all by default.
+
+        Raises KeyError for a draw of something that is not uncertain here.
+        """
+        for name in draws:
+            raise KeyError(name)
+        given = self.evaluate(designs)
+        found = {**given.settings, **given.outcomes}
+        wanted = found if names is None else names
+        return Sampled({name: found[name][:, None] for name in wanted}, given.possible[:, None])
 
     def plainer(self, designs: Floats) -> Floats:
         """The same designs, shape (n, number of variables), without parts that may do nothing.

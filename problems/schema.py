@@ -13,7 +13,8 @@ from pydantic import PrivateAttr, ValidationInfo, field_validator
 
 from problems.goals import Aims, Limits
 from problems.problem import Aim, Limit
-from problems.rules import Choice, Number, Span, Text, faults
+from problems.rules import Choice, Foreign, Number, Span, Text, faults
+from problems.spreads import Uncertainties, misplaced
 from problems.tables import (
     Assumed,
     Fan,
@@ -43,6 +44,7 @@ class Case(Table):
     trip: Trip | None = None
     fan: Fan = Fan()
     money: Money | None = None
+    uncertain: Annotated[Uncertainties | None, Foreign("this kind has no uncertain inputs")] = None
     aims: tuple[Aim, ...]
     limits: tuple[Limit, ...] = ()
 
@@ -117,12 +119,32 @@ class Case(Table):
             raise faults([(("height",), None, says)])
         return trip
 
+    @field_validator("uncertain")
+    @classmethod
+    def _about_what_there_is(
+        cls, uncertain: Uncertainties | None, info: ValidationInfo
+    ) -> Uncertainties | None:
+        read = info.data
+        if uncertain is None or not {"fluid", "plates", "trip", "fan"} <= read.keys():
+            return uncertain
+        found = misplaced(
+            uncertain,
+            read["plates"].gap is not None,
+            read["trip"] is not None,
+            read["fluid"].turbulence is not None,
+            read["fan"].catalogue is not None,
+        )
+        if found:
+            raise faults(found)
+        return uncertain
+
 
 class PlateCase(Case):
     """One plate in a free stream."""
 
     kind: Annotated[Literal["plate"], Choice(("plate",))]
     plates: SinglePlate
+    uncertain: Uncertainties | None = None
     aims: Annotated[tuple[Aim, ...], Aims("plate")]
     limits: Annotated[tuple[Limit, ...], Limits("plate")] = ()
 
@@ -132,6 +154,7 @@ class StackCase(Case):
 
     kind: Annotated[Literal["stack"], Choice(("stack",))]
     plates: StackPlates
+    uncertain: Uncertainties | None = None
     aims: Annotated[tuple[Aim, ...], Aims("stack")]
     limits: Annotated[tuple[Limit, ...], Limits("stack")] = ()
 

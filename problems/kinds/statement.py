@@ -6,6 +6,8 @@ Joins variables, physics, ranges of validity, cautions and words. The balances t
 
 from __future__ import annotations
 
+from collections.abc import Collection, Mapping
+from copy import copy
 from dataclasses import dataclass
 from typing import TypeVar
 
@@ -19,10 +21,13 @@ from problems.convection.flat_plate import smooth_step
 from problems.convection.fluids import Fluid, FluidError
 from problems.fans.choice import Choice
 from problems.kinds import cautions, laws, pictures, plate, stack, words
+from problems.kinds import sampled as under_draws
 from problems.kinds.blown import Blower, bought, reasons_of
+from problems.kinds.doubts import doubts
 from problems.kinds.outcomes import OPTIONAL, OUTCOMES, SETTINGS
 from problems.kinds.swept import CHUNK, Settings, Walked, settings, variables
-from problems.problem import Evaluation, Floats, Outcome, Problem, Profile, Sketch
+from problems.problem import Bools, Evaluation, Floats, Outcome, Problem, Profile, Sketch
+from problems.uncertain import Sampled
 
 _Scalar = TypeVar("_Scalar", bound=np.generic)
 
@@ -78,6 +83,7 @@ class SweptPlates(Problem):
                 f"{case.name}: fan.catalogue -- fans move gases; take efficiency of a pump"
             )
         self.notes = words.notes(case, self.fluid)
+        self.uncertain = doubts(case)
 
     def evaluate(self, designs: Floats) -> Evaluation:
         """Evaluate designs of shape (n, number of variables); see `Problem.evaluate`."""
@@ -116,6 +122,40 @@ class SweptPlates(Problem):
             ),
             labels=self.blower.names(batch.choice),
         )
+
+    def sampled(
+        self,
+        designs: Floats,
+        draws: Mapping[str, Floats],
+        names: Collection[str] | None = None,
+    ) -> Sampled:
+        """What designs give at draws of the uncertain inputs; see `Problem.sampled`."""
+        return under_draws.sampled(self, designs, draws, names)
+
+    def for_inlets(self, inlets: tuple[float, float]) -> SweptPlates:
+        """The same with properties known for inlet temperatures from low to high [K]."""
+        wider = copy(self)
+        if inlets[0] < inlets[1]:
+            wider.fluid = _fluid(self.case, inlets)
+        return wider
+
+    def figures(self, given: Settings) -> tuple[dict[str, Floats], Bools]:
+        """Outcomes and settings of a chunk of designs, and whether each is possible."""
+        batch = self._balanced(given)
+        impossible_by, reasons = _impossible(self.fluid, batch)
+        if batch.choice is not None:
+            impossible_by, _ = _unserved(batch, batch.choice, impossible_by, reasons)
+        possible = impossible_by == 0.0
+        if "inlet" in given:
+            possible &= (given["inlet"] >= self.fluid.low) & (given["inlet"] <= self.fluid.high)
+        return {**batch.settings, **batch.outcomes}, possible
+
+    def fan_rows(self, given: Settings) -> NDArray[np.intp]:
+        """The fan chosen for each of a chunk of designs, as a row of the blower's curves."""
+        choice = self._balanced(given).choice
+        if choice is None:
+            raise ValueError("the case names no catalogue")
+        return choice.row
 
     def batch(self, designs: Floats) -> Batch:
         """Walk along designs of shape (n, number of variables) and balance them."""
@@ -298,15 +338,16 @@ def _low_reason(fluid: Fluid) -> str:
     return f"a temperature is under {known}"
 
 
-def _fluid(case: Case) -> Fluid:
-    """Property table over all temperatures that the case can meet."""
+def _fluid(case: Case, inlets: tuple[float, float] | None = None) -> Fluid:
+    """Property table over all temperatures that the case can meet, at its inlet or others."""
     inlet, wall = case.fluid.temperature, case.plates.surface.temperature
+    cold, hot = inlets or (inlet, inlet)
     if wall is not None:
-        low, high = min(inlet, wall), max(inlet, wall)
+        low, high = min(cold, wall), max(hot, wall)
     elif (case.plates.surface.flux or 0.0) > 0.0:
-        low, high = inlet, inlet + _REACH
+        low, high = cold, hot + _REACH
     else:
-        low, high = max(inlet - _REACH, 0.5 * inlet), inlet
+        low, high = max(cold - _REACH, 0.5 * cold), hot
     return fluids.fluid(
         case.fluid.name,
         case.fluid.pressure,
