@@ -104,6 +104,7 @@ def _parser() -> argparse.ArgumentParser:
     _add_point(commands)
     _add_search(commands)
     _add_trips(commands)
+    _add_robust(commands)
     return parser
 
 
@@ -179,6 +180,40 @@ def _add_trips(commands: Any) -> None:
     _finish(trips, _trips)
 
 
+def _add_robust(commands: Any) -> None:
+    text = "the front of a run under what is uncertain: bands, chances, a front at a confidence"
+    robust = commands.add_parser(
+        "robust",
+        help=text,
+        description=f"{text[0].upper()}{text[1:]}. What is uncertain stands in the table "
+        "[uncertain] of the run's case.toml; without it what is usual is taken.",
+    )
+    robust.add_argument("run", metavar="RUN", type=Path, help="the folder that a search left")
+    robust.add_argument(
+        "--set",
+        metavar="KEY=VALUE",
+        action="append",
+        default=[],
+        help="what is uncertain, in place of the case's, such as uncertain.gap=5%% or "
+        "uncertain.inlet=15degC..35degC; may be repeated",
+    )
+    robust.add_argument(
+        "--samples", metavar="N", type=_power_of_2, help="draws that designs meet, a power of 2"
+    )
+    robust.add_argument(
+        "--confidence", metavar="SHARE", type=_confidence, help="for limits and aims (90%%)"
+    )
+    _add_seed(robust, "same seed, same answer (1)")
+    robust.add_argument(
+        "--workers", metavar="N", type=_whole_from(1), default=1, help="processes side by side (1)"
+    )
+    robust.add_argument(
+        "--out", metavar="DIR", type=Path, help="where table and pictures go (the run folder)"
+    )
+    robust.add_argument("--force", action="store_true", help="replace what is there")
+    _finish(robust, _robust)
+
+
 def _add_set(parser: argparse.ArgumentParser) -> None:
     parser.add_argument(
         "--set",
@@ -213,6 +248,28 @@ def _whole_from(least: int) -> Callable[[str], int]:
         return number
 
     return read
+
+
+def _power_of_2(text: str) -> int:
+    number = int(text) if text.isdecimal() and len(text) < 10 else 0
+    if not 16 <= number <= 1 << 20 or number & (number - 1):
+        raise argparse.ArgumentTypeError(
+            f"{text!r} -- a power of 2 from 16 to {1 << 20}, such as 1024"
+        )
+    return number
+
+
+def _confidence(text: str) -> float:
+    """A share from 50 % to 99.9 %."""
+    from problems.units import QuantityError, to_si
+
+    try:
+        share = to_si(text, "1")
+    except QuantityError:
+        share = 0.0
+    if not 0.5 <= share <= 0.999:
+        raise argparse.ArgumentTypeError(f"{text!r} -- a share from 50%% to 99.9%%, such as 90%%")
+    return share
 
 
 def _levels(text: str) -> tuple[float, float]:
@@ -376,6 +433,48 @@ def _trips(asked: argparse.Namespace) -> int:
     where = f"\n\nRun folder: {folder} ({', '.join(files)})"
     _print(found, asked.json, lambda: trip_text.of_trips(found) + where)
     return DONE
+
+
+def _robust(asked: argparse.Namespace) -> int:
+    from optim import progress, robust, robust_account, robust_files, robust_text
+    from optim.crew import crew
+    from optim.front import Front
+    from problems import build, load_case
+
+    front = Front.load(asked.run)
+    case = load_case(asked.run / "case.toml", _only_uncertain(_overrides(asked.set)))
+    problem = build(case)
+    folder = robust_files.opened(asked.out or asked.run, force=asked.force)
+    with (
+        crew(case, problem, asked.workers) as each,
+        progress.counted(sys.stderr, robust.STEPS, "per cent") as told,
+    ):
+        study = robust.studied(
+            problem,
+            front,
+            asked.samples or robust.SAMPLES,
+            asked.confidence or robust.CONFIDENCE,
+            asked.seed,
+            each,
+            told,
+        )
+    found = robust_account.of_study(study)
+    files = robust_files.saved(study, found, folder)
+    found = {**found, "run": str(folder), "files": files}
+    where = f"\n\nFolder: {folder} ({', '.join(files)})"
+    _print(found, asked.json, lambda: robust_text.of_study(found, problem) + where)
+    return DONE if found["answered"] else NO
+
+
+def _only_uncertain(overrides: dict[str, str | float]) -> dict[str, str | float]:
+    """What may be set of a case whose front is given."""
+    for key, value in overrides.items():
+        if not key.startswith("uncertain."):
+            raise UsageError(
+                f"--set {key}={value}: the front is of the case as it is; only what is uncertain "
+                "can be set here, such as uncertain.gap=5%"
+            )
+    return overrides
 
 
 if __name__ == "__main__":

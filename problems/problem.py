@@ -179,6 +179,7 @@ class Problem(ABC):
     notes: tuple[str, ...]
     source: str  # the case as given, for the run folder
     uncertain: tuple[Uncertain, ...] = ()  # inputs that are not known exactly
+    exact: tuple[str, ...] = ()  # inputs that might be uncertain and are taken as exact
 
     @abstractmethod
     def evaluate(self, designs: Floats) -> Evaluation:

@@ -135,6 +135,7 @@ MEANINGS = {
     "wire": "diameter of the wire",
     "wire_place": "place of the wire",
     "wire_drag": "drag coefficient of the wire",
+    "wire_criterion": "wire Reynolds number from which a wire trips",
     "laminar_heat": "law of laminar heat transfer",
     "turbulent_heat": "law of turbulent heat transfer",
     "laminar_friction": "law of laminar friction",
@@ -171,6 +172,7 @@ class Uncertainties(Table):
     wire: Annotated[Spread | None, _rule("wire", step=_SMALL)] = None
     wire_place: Annotated[Spread | None, _rule("wire_place", step=_PLACE)] = None
     wire_drag: Annotated[Spread | None, _rule("wire_drag", _DRAG, "[0.6, 1.2]")] = None
+    wire_criterion: Annotated[Spread | None, _rule("wire_criterion")] = None
     laminar_heat: Annotated[Spread | None, _rule("laminar_heat")] = None
     turbulent_heat: Annotated[Spread | None, _rule("turbulent_heat")] = None
     laminar_friction: Annotated[Spread | None, _rule("laminar_friction")] = None

@@ -34,7 +34,7 @@ class Surface:
     percent; `wire_x`, `wire_k` U x/nu and U k/nu of a wire, None without; `wires` of them stand
     in a row `wire_spacing` apart, `facing` of them (0 to 2) in one section of the gap; `grit`
     makes them strips of grit; `flux` is for uniform wall flux instead of wall temperature;
-    `scatter` multiplies the laws.
+    `scatter` multiplies the laws, `criterion` the figures from which a wire trips.
     """
 
     re_l: Floats
@@ -52,6 +52,7 @@ class Surface:
     drag_coefficient: Floats | float = 1.0
     flux: bool = False
     scatter: Scatter | None = None
+    criterion: Floats | float = 1.0
 
     def part(self, index: NDArray[np.intp]) -> Surface:
         """The same for some of the designs, as columns of shape (k, 1) for use with stations."""
@@ -365,6 +366,7 @@ def _wire(surface: Surface, place: Floats, ahead: list[Wire]) -> Wire:
         on_plate=1.0 - behind_end,
         drag_coefficient=surface.drag_coefficient,
         grit=surface.grit,
+        criterion=surface.criterion,
     )
 
 

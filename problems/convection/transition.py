@@ -102,7 +102,8 @@ class Wire:
     outside the layer there over the nominal one, `re_theta` the laminar layer's there,
     `blockage` the wires' share of the gap (0 on a single plate), `drag_coefficient` on the mean
     square of the undisturbed profile over the wire's height, `on_plate` 1 on the plate, fading to
-    0 over a tenth of its length behind its end. With `grit` it is a strip of three-dimensional
+    0 over a tenth of its length behind its end; `criterion` multiplies the figures from which it
+    trips. With `grit` it is a strip of three-dimensional
     roughness of that height instead: another criterion, and less drag for the same height.
     """
 
@@ -114,6 +115,7 @@ class Wire:
     on_plate: Floats
     drag_coefficient: Floats | float
     grit: bool = False
+    criterion: Floats | float = 1.0
 
     @property
     def reynolds(self) -> Floats:
@@ -168,8 +170,9 @@ class Wire:
         Grit: of the criterion Re_k, 0 at 500 and 1 from 600.
         """
         if self.grit:
-            return smooth_step(self.top_reynolds, GRIT_LOW, GRIT_DESIGN) * self.on_plate
-        return smooth_step(self.reynolds, _WIRE_NONE, WIRE_DESIGN) * self.on_plate
+            reached = self.top_reynolds / self.criterion
+            return smooth_step(reached, GRIT_LOW, GRIT_DESIGN) * self.on_plate
+        return smooth_step(self.reynolds / self.criterion, _WIRE_NONE, WIRE_DESIGN) * self.on_plate
 
     def holds(self) -> Floats:
         """Smooth weight of the criterion Re_theta behind the wire: 0 at 200, 1 from 320."""

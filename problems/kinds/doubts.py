@@ -46,6 +46,7 @@ _USUAL: dict[str, tuple[Spread, str]] = {
         Spread("factor", 0.6, 1.2, True, "uniform"),
         "0.6 to 1.2 about 1.0 (from memory)",
     ),
+    "wire_criterion": (_share(0.10), "826 and 900 are published (from memory)"),
     "fan_efficiency": (_share(0.05), "efficiency as stated or tested (common practice)"),
 }
 

@@ -20,7 +20,7 @@ if TYPE_CHECKING:
     from problems.kinds.statement import SweptPlates
 
 Given = dict[str, Floats]
-DIRECT = (*LAWS, "fouling")  # what is drawn stands in the settings as it is
+DIRECT = (*LAWS, "fouling", "wire_criterion")  # what is drawn stands in the settings as it is
 _NEAREST = 1e-5  # m, of a wire to the leading edge
 _LESS = 1.0 - 1e-6  # of a velocity that a fan has decided, so that it finds the same fan again
 

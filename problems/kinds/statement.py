@@ -23,7 +23,7 @@ from problems.fans.choice import Choice
 from problems.kinds import cautions, laws, pictures, plate, stack, words
 from problems.kinds import sampled as under_draws
 from problems.kinds.blown import Blower, bought, reasons_of
-from problems.kinds.doubts import doubts
+from problems.kinds.doubts import doubts, taken_as_exact
 from problems.kinds.outcomes import OPTIONAL, OUTCOMES, SETTINGS
 from problems.kinds.swept import CHUNK, Settings, Walked, settings, variables
 from problems.problem import Bools, Evaluation, Floats, Outcome, Problem, Profile, Sketch
@@ -83,7 +83,7 @@ class SweptPlates(Problem):
                 f"{case.name}: fan.catalogue -- fans move gases; take efficiency of a pump"
             )
         self.notes = words.notes(case, self.fluid)
-        self.uncertain = doubts(case)
+        self.uncertain, self.exact = doubts(case), taken_as_exact(case)
 
     def evaluate(self, designs: Floats) -> Evaluation:
         """Evaluate designs of shape (n, number of variables); see `Problem.evaluate`."""

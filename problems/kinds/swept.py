@@ -208,6 +208,7 @@ def _wired(
         facing=1 if one or trip.facing == "staggered" else 2,
         grit=trip.sort == "grit",
         drag_coefficient=given.get("wire_drag", trip.drag_coefficient),
+        criterion=given.get("wire_criterion", 1.0),
     )
     walked = sweep(surface)
     if one and not (case.kind == "plate" and case.plates.faces == 1):

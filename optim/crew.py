@@ -1,0 +1,50 @@
+"""Work on a case shared among processes: each makes the problem from the text of the case once.
+
+With one worker everything is done here. What the work is, is for the caller.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable, Iterator
+from contextlib import contextmanager
+from typing import TYPE_CHECKING
+
+from optim.bands import Bands, Block, Each, in_turn
+from problems import build
+
+if TYPE_CHECKING:
+    from problems.case import Case
+    from problems.problem import Problem
+
+Work = Callable[["Problem", Block], Bands]
+_HERE: dict[str, Problem] = {}  # the problem of a worker process
+
+
+@contextmanager
+def crew(case: Case, problem: Problem, workers: int) -> Iterator[Each]:
+    """What shares blocks of work among `workers` processes, in order, within this context."""
+    if workers < 2:
+        yield in_turn(problem)
+        return
+    from concurrent.futures import ProcessPoolExecutor
+    from multiprocessing import get_context
+
+    facts = (case.source, case.name, case.folder)
+    with ProcessPoolExecutor(
+        workers, mp_context=get_context("spawn"), initializer=_ready, initargs=facts
+    ) as pool:
+
+        def each(work: Work, blocks: Iterable[Block]) -> Iterator[Bands]:
+            return pool.map(_worked, *zip(*((work, block) for block in blocks), strict=True))
+
+        yield each
+
+
+def _ready(source: str, name: str, folder: str) -> None:
+    from problems.case import parse_case
+
+    _HERE["problem"] = build(parse_case(source, name, folder=folder))
+
+
+def _worked(work: Work, block: Block) -> Bands:
+    return work(_HERE["problem"], block)
