@@ -205,6 +205,12 @@ def _add_robust(commands: Any) -> None:
     )
     _add_seed(robust, "same seed, same answer (1)")
     robust.add_argument(
+        "--evaluations",
+        metavar="N",
+        type=_whole_from(1),
+        help="at most so many designs searched at the confidence (12000)",
+    )
+    robust.add_argument(
         "--workers", metavar="N", type=_whole_from(1), default=1, help="processes side by side (1)"
     )
     robust.add_argument(
@@ -268,7 +274,7 @@ def _confidence(text: str) -> float:
     except QuantityError:
         share = 0.0
     if not 0.5 <= share <= 0.999:
-        raise argparse.ArgumentTypeError(f"{text!r} -- a share from 50%% to 99.9%%, such as 90%%")
+        raise argparse.ArgumentTypeError(f"{text!r} -- a share from 50% to 99.9%, such as 90%")
     return share
 
 
@@ -457,6 +463,7 @@ def _robust(asked: argparse.Namespace) -> int:
             asked.seed,
             each,
             told,
+            asked.evaluations or robust.EVALUATIONS,
         )
     found = robust_account.of_study(study)
     files = robust_files.saved(study, found, folder)

@@ -78,10 +78,10 @@ def _indices(values: Floats, count: int) -> tuple[Floats, Floats, float]:
     spread = float(both.std())
     if spread <= _STILL * float(np.abs(both).max()):
         return np.zeros(len(parts) - 2), np.zeros(len(parts) - 2), spread
-    func: Any = {"f_A": parts[:1], "f_B": parts[1:2], "f_AB": parts[2:, None]}
+    twice = np.stack([parts, parts], axis=1)  # of one outcome alone scipy makes a scalar and fails
+    func: Any = {"f_A": twice[0], "f_B": twice[1], "f_AB": twice[2:]}
     found = sobol_indices(func=func, n=count)
-    return (
-        np.asarray(found.first_order).reshape(-1),
-        np.asarray(found.total_order).reshape(-1),
-        spread,
+    first, total = (
+        np.asarray(indices).reshape(2, -1)[0] for indices in (found.first_order, found.total_order)
     )
+    return first, total, spread

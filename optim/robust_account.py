@@ -27,6 +27,7 @@ Account = dict[str, Any]
 
 INDICES = "Sobol' 1993; Saltelli et al. 2010 (first order), Jansen 1999 (total); by scipy"
 _SHOWN = 7
+_SAME = 5e-4  # change of an aim that is not worth a word
 
 
 def of_study(study: Study) -> Account:
@@ -95,11 +96,18 @@ def answer(study: Study) -> str:
         f"{held or 'None'} of them {stay} unbeaten when every aim is taken at {rate} "
         f"confidence{near_it}."
     )
-    changes = [f"{words(price['outcome'])} {_apart(price)}" for price in _price(study)]
-    said.append(
-        f"What is assured with {rate}, median of the front: {_listed(changes)} what is computed."
-    )
-    said.append(f"What decides most: {_listed(list(_deciding(study)))}.")
+    changes = [
+        f"{words(price['outcome'])} {_apart(price)}"
+        for price in _price(study)
+        if abs(price["median_change"]) >= _SAME
+    ]
+    if changes:
+        said.append(
+            f"What is assured with {rate}, median of the front: {_listed(changes)} what is "
+            "computed."
+        )
+    if deciding := list(_deciding(study)):
+        said.append(f"What decides most: {_listed(deciding)}.")
     return " ".join(said)
 
 
@@ -113,8 +121,6 @@ def _deciding(study: Study) -> Iterator[str]:
         first, share = next(iter(study.influence.share(aim.outcome).items()))
         if share > 0.0:
             yield f"{words(first)} for {words(aim.outcome)} ({100.0 * share:.0f} % of the variance)"
-        else:
-            yield f"nothing for {words(aim.outcome)}"
 
 
 def _apart(price: Account) -> str:

@@ -110,7 +110,7 @@ def test_help_names_the_commands_and_no_others(run):
     assert code == 0
     listed = out.split("COMMAND\n")[1].split("Exit codes")[0].splitlines()
     commands = [line.split()[0] for line in listed if line.startswith("    ") and line[4] != " "]
-    assert commands == ["cases", "check", "point", "search", "trips"]
+    assert commands == ["cases", "check", "point", "search", "trips", "robust"]
 
 
 def test_no_command_prints_the_help(run):
