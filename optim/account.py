@@ -51,9 +51,29 @@ def of_case(case: Case, problem: Problem) -> Account:
         "laws": [
             {"name": law.name, "source": law.source, "valid": law.valid} for law in problem.laws
         ],
+        "uncertain": uncertain(problem),
         "notes": list(problem.notes),
         "cautions": safety(),
     }
+
+
+def uncertain(problem: Problem) -> list[Account]:
+    """The inputs that are not known exactly, as stated or as is usual."""
+    return [
+        {
+            "name": known.name,
+            "meaning": known.meaning,
+            "sort": known.sort,
+            "unit": known.unit,
+            "nominal": known.nominal,
+            "low": known.low,
+            "high": known.high,
+            "shape": known.shape,
+            "source": known.source,
+            "usual": known.usual,
+        }
+        for known in problem.uncertain
+    ]
 
 
 def middle(problem: Problem) -> Floats:

@@ -258,10 +258,8 @@ def _whole_from(least: int) -> Callable[[str], int]:
 
 def _power_of_2(text: str) -> int:
     number = int(text) if text.isdecimal() and len(text) < 10 else 0
-    if not 16 <= number <= 1 << 20 or number & (number - 1):
-        raise argparse.ArgumentTypeError(
-            f"{text!r} -- a power of 2 from 16 to {1 << 20}, such as 1024"
-        )
+    if not 16 <= number <= 65536 or number & (number - 1):
+        raise argparse.ArgumentTypeError(f"{text!r} -- a power of 2 from 16 to 65536, such as 1024")
     return number
 
 
@@ -338,12 +336,13 @@ def _copied(name: str, known: list[str], force: bool) -> Path:
 
 
 def _check(asked: argparse.Namespace) -> int:
-    from optim import account, text
+    from optim import account, robust_text, text
     from problems import build, load_case
 
     case = load_case(asked.case)
     found = account.of_case(case, build(case))
-    _print(found, asked.json, lambda: text.of_case(found))
+    doubts = text.section("\n\nUncertain, for robust", robust_text.inputs(found["uncertain"]))
+    _print(found, asked.json, lambda: f"{text.of_case(found)}{doubts}".rstrip())
     return DONE
 
 

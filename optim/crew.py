@@ -10,6 +10,7 @@ from contextlib import contextmanager
 from typing import TYPE_CHECKING
 
 from optim.bands import Bands, Block, Each, in_turn
+from optim.errors import RunError
 from problems import build
 
 if TYPE_CHECKING:
@@ -22,27 +23,38 @@ _HERE: dict[str, Problem] = {}  # the problem of a worker process
 
 @contextmanager
 def crew(case: Case, problem: Problem, workers: int) -> Iterator[Each]:
-    """What shares blocks of work among `workers` processes, in order, within this context."""
+    """What shares blocks of work among `workers` processes, in order, within this context.
+
+    Raises RunError where a process ends before its work is done.
+    """
     if workers < 2:
         yield in_turn(problem)
         return
-    from concurrent.futures import ProcessPoolExecutor
+    from concurrent.futures import BrokenExecutor, ProcessPoolExecutor
     from multiprocessing import get_context
 
     facts = (case.source, case.name, case.folder)
-    with ProcessPoolExecutor(
+    pool = ProcessPoolExecutor(
         workers, mp_context=get_context("spawn"), initializer=_ready, initargs=facts
-    ) as pool:
+    )
 
-        def each(work: Work, blocks: Iterable[Block]) -> Iterator[Bands]:
-            return pool.map(_worked, *zip(*((work, block) for block in blocks), strict=True))
+    def each(work: Work, blocks: Iterable[Block]) -> Iterator[Bands]:
+        return pool.map(_worked, *zip(*((work, block) for block in blocks), strict=True))
 
+    try:
         yield each
+    except BrokenExecutor as fault:
+        raise RunError("a worker ended before its work was done; try --workers 1") from fault
+    finally:
+        pool.shutdown(cancel_futures=True)
 
 
 def _ready(source: str, name: str, folder: str) -> None:
+    import signal
+
     from problems.case import parse_case
 
+    signal.signal(signal.SIGINT, signal.SIG_IGN)  # whoever started the workers ends them
     _HERE["problem"] = build(parse_case(source, name, folder=folder))
 
 

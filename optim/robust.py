@@ -15,6 +15,7 @@ import pandas as pd
 
 from optim.archive import Indices, nondominated, thin_evenly
 from optim.bands import Bands, Each, Terms, banded, joined
+from optim.course import INTERRUPTED
 from optim.draws import shared
 from optim.errors import RunError
 from optim.front import Front, tabulated
@@ -170,6 +171,8 @@ def _searched(
     found = search(
         Confident(problem, terms, each), seed, evaluations, news, size=FRONT_SIZE, start=known
     )
+    if found.provenance["stopped_because"] == INTERRUPTED:
+        raise KeyboardInterrupt
     reach(1.0)
     return designs(found, problem), int(found.provenance["evaluations"])
 

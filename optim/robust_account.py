@@ -11,7 +11,7 @@ from typing import Any
 import numpy as np
 import pandas as pd
 
-from optim.account import safety
+from optim.account import safety, uncertain
 from optim.bands import BAND, Bands
 from optim.front import units
 from optim.picks import picked
@@ -20,7 +20,6 @@ from optim.robust import Study
 from optim.task import Bound, task_of
 from optim.text import words
 from problems.problem import Floats, Outcome
-from problems.uncertain import Uncertain
 from problems.units import suffix
 
 Account = dict[str, Any]
@@ -43,7 +42,7 @@ def of_study(study: Study) -> Account:
         "versions": versions(),
         "answer": answer(study),
         "answered": bool(len(study.robust)),
-        "inputs": [_input(known) for known in problem.uncertain],
+        "inputs": uncertain(problem),
         "exact": list(problem.exact),
         "all_usual": all(known.usual for known in problem.uncertain),
         "front": {
@@ -153,21 +152,6 @@ def _price(study: Study) -> list[Account]:
             }
         )
     return found
-
-
-def _input(known: Uncertain) -> Account:
-    return {
-        "name": known.name,
-        "meaning": known.meaning,
-        "sort": known.sort,
-        "unit": known.unit,
-        "nominal": known.nominal,
-        "low": known.low,
-        "high": known.high,
-        "shape": known.shape,
-        "source": known.source,
-        "usual": known.usual,
-    }
 
 
 def _limits(study: Study) -> list[Account]:
@@ -301,8 +285,8 @@ def _notes(study: Study) -> list[str]:
     if all(known.usual for known in study.problem.uncertain):
         said.insert(
             0,
-            "The case has no table [uncertain]: what is usual was taken. State what you know of "
-            "your own job there.",
+            "The case states nothing in [uncertain]: what is usual was taken. State there what "
+            "you know of your own job.",
         )
     if study.problem.exact:
         said.append(f"Taken as exact: {', '.join(words(name) for name in study.problem.exact)}.")

@@ -7,7 +7,7 @@ units that are shown.
 from __future__ import annotations
 
 import textwrap
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from typing import Any
 
 from optim.text import WIDTH, section, sentences, table, words
@@ -24,7 +24,7 @@ def of_study(account: Account, problem: Problem) -> str:
     parts = [
         f"{account['title']}\nkind {account['kind']}\n",
         section("Answer", _paragraph(account["answer"])),
-        section("Uncertain", _inputs(account)),
+        section("Uncertain", inputs(account["inputs"])),
         section("Chance of meeting the limits, along the front", _limits(account)),
         section("Designs of the front, with 5 to 95 % of the draws", _front(account, problem)),
         section(f"The front at {rate} confidence", _robust(account, problem)),
@@ -45,9 +45,12 @@ def _paragraph(text: str) -> str:
     return textwrap.fill(text, WIDTH, initial_indent="  ", subsequent_indent="  ")
 
 
-def _inputs(account: Account) -> str:
+def inputs(known_inputs: Sequence[Account]) -> str:
+    """The uncertain inputs as a table, empty where there are none."""
+    if not known_inputs:
+        return ""
     rows = [("INPUT", "BETWEEN", "SHAPE", "WHAT, AND WHERE FROM")]
-    for known in account["inputs"]:
+    for known in known_inputs:
         rows.append(
             (
                 words(known["name"]),

@@ -12,6 +12,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from optim.errors import RunError, RunExistsError
+from optim.files import written_whole
 
 if TYPE_CHECKING:
     from optim.front import Front
@@ -74,9 +75,18 @@ def saved(front: Front, problem: Problem, folder: RunFolder) -> list[str]:
     for name in PICTURES:
         (folder.path / name).unlink(missing_ok=True)
     told = replace(front, provenance={**front.provenance, "safety": safety()})
+    _copied(problem, folder.path)
     told.save(folder.path, force=True)
     pictures = save_pictures(front, problem, folder.path)
     return [*_RUN, *(picture.name for picture in pictures)]
+
+
+def _copied(problem: Problem, folder: Path) -> None:
+    """Copy what the case needs beside it, so that the run can be taken up again from its folder."""
+    for name, place in problem.files:
+        if place.resolve() != (folder / name).resolve():
+            with written_whole(folder / name, "wb") as stream:
+                stream.write(place.read_bytes())
 
 
 def _remove_if_empty(path: Path) -> None:

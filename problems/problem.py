@@ -9,6 +9,7 @@ from __future__ import annotations
 from abc import ABC, abstractmethod
 from collections.abc import Collection, Mapping
 from dataclasses import dataclass, field
+from pathlib import Path
 from typing import Literal
 
 import numpy as np
@@ -178,6 +179,7 @@ class Problem(ABC):
     laws: tuple[Law, ...]
     notes: tuple[str, ...]
     source: str  # the case as given, for the run folder
+    files: tuple[tuple[str, Path], ...] = ()  # what the case needs beside it: its name, its place
     uncertain: tuple[Uncertain, ...] = ()  # inputs that are not known exactly
     exact: tuple[str, ...] = ()  # inputs that might be uncertain and are taken as exact
 
@@ -209,8 +211,8 @@ class Problem(ABC):
         """What designs of shape (n, number of variables) give at draws of the uncertain inputs.
 
         `draws` holds for some of `uncertain`, by name, m values each, shape (m,); the others are
-        taken as nominal. Every design meets the same draws. `names` are the outcomes and settings
-        that are wanted, all by default.
+        taken as nominal (m is 1 without draws). Every design meets the same draws. `names` are
+        the outcomes and settings that are wanted, all by default.
 
         Raises KeyError for a draw of something that is not uncertain here.
         """

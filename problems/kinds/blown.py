@@ -9,6 +9,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from functools import cached_property
+from pathlib import Path
 
 import numpy as np
 from numpy.typing import NDArray
@@ -44,6 +45,15 @@ class Blower:
         """The fans to choose from, None with an assumed efficiency."""
         name = self.case.fan.catalogue
         return None if name is None else read_catalogue(name, self.case.folder)
+
+    def files(self) -> tuple[tuple[str, Path], ...]:
+        """The catalogue's files if they lie beside the case: path from there, and place."""
+        name, beside = self.case.fan.catalogue, Path(self.case.folder)
+        if name is None or self.catalogue is None or Path(name).is_absolute() or ".." in name:
+            return ()
+        place = beside / name
+        found = sorted(place.glob("*.csv")) if place.is_dir() else [place]
+        return tuple((str(path.relative_to(beside)), path) for path in found if path.is_file())
 
     @cached_property
     def curves(self) -> Curves:

@@ -83,6 +83,7 @@ class SweptPlates(Problem):
                 f"{case.name}: fan.catalogue -- fans move gases; take efficiency of a pump"
             )
         self.notes = words.notes(case, self.fluid)
+        self.files = self.blower.files()
         self.uncertain, self.exact = doubts(case), taken_as_exact(case)
 
     def evaluate(self, designs: Floats) -> Evaluation:

@@ -365,7 +365,7 @@ def test_the_text_tells_the_answer_the_inputs_and_that_they_are_the_usual_ones(
     assert robust(runs / "hulling-stack", "--out", tmp_path / "o") == 0
     out = " ".join(capsys.readouterr().out.split())
     assert "meet all limits with a chance of 90 % or more" in out
-    assert "The case has no table [uncertain]: what is usual was taken" in out
+    assert "The case states nothing in [uncertain]: what is usual was taken" in out
     assert "x 0.6667 to x 1.5 log-uniform" in out
     assert "from memory" in out
     assert "What matters" in out
@@ -404,3 +404,48 @@ def test_where_no_design_is_sure_enough_the_answer_is_no(tmp_path, capsys):
     assert robust(tmp_path / "run", *sure) == 1
     assert "No other design does either" in " ".join(capsys.readouterr().out.split())
     assert (tmp_path / "run" / "robust.json").is_file()
+
+
+def test_a_run_whose_case_names_a_catalogue_beside_it_can_be_taken_up_from_its_folder(
+    tmp_path, capsys
+):
+    fans = Path(ready_made_text.__code__.co_filename).parent / "cases" / "workshop-fans.csv"
+    (tmp_path / "my").mkdir()
+    (tmp_path / "my" / "fans.csv").write_bytes(fans.read_bytes())
+    table = '[fan]\ncatalogue = "my/fans.csv"\n'
+    text = ready_made_text("hulling-stack").replace("[fan]\nefficiency = 0.55\n", table)
+    (tmp_path / "own.toml").write_text(text, encoding="utf-8")
+    few = ["--evaluations", "2500", "--out", str(tmp_path / "run")]
+    assert main(["search", str(tmp_path / "own.toml"), *few]) == 0
+    assert (tmp_path / "run" / "my" / "fans.csv").read_bytes() == fans.read_bytes()
+    assert robust(tmp_path / "run") == 0
+    names = {
+        known["name"]
+        for known in json.loads((tmp_path / "run" / "robust.json").read_text())["inputs"]
+    }
+    assert "fan_efficiency" in names
+
+
+def test_check_tells_what_is_uncertain(capsys):
+    assert main(["check", "kiln-shield"]) == 0
+    out = capsys.readouterr().out
+    assert "Uncertain, for robust" in out
+    assert "x 0.6667 to x 1.5" in out
+    assert main(["check", "kiln-shield", "--json"]) == 0
+    assert json.loads(capsys.readouterr().out)["uncertain"][0]["name"] == "onset"
+
+
+def test_a_search_broken_off_by_the_user_ends_the_study(monkeypatch):
+    problem = linear()
+    front = search(problem, seed=1, evaluations=1000)
+
+    heard = 0
+
+    def impatient() -> None:
+        nonlocal heard
+        heard += 1
+        if heard > 30:  # in the middle of the search
+            raise KeyboardInterrupt
+
+    with pytest.raises(KeyboardInterrupt):
+        studied(problem, front, told=impatient, **FEW)
