@@ -18,6 +18,7 @@ from problems.problem import Bools, Floats, Problem
 from problems.uncertain import Sampled
 
 BAND = (5.0, 50.0, 95.0)  # percentiles of the bands
+_ROUNDING = 1e-9  # of a limit: a design that stands on it meets it
 _BLOCK = 1 << 14  # evaluations at a time
 
 
@@ -138,6 +139,7 @@ def _excess(bounds: tuple[Bound, ...], given: Sampled) -> Floats:
         return np.empty((*given.possible.shape, 0))
     parts = [
         bound.sign * (given.outcomes[bound.outcome] - bound.bound) / (abs(bound.bound) or 1.0)
+        - _ROUNDING
         for bound in bounds
     ]
     return np.stack(parts, axis=2)

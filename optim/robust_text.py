@@ -26,8 +26,14 @@ def of_study(account: Account, problem: Problem) -> str:
         section("Answer", _paragraph(account["answer"])),
         section("Uncertain", inputs(account["inputs"])),
         section("Chance of meeting the limits, along the front", _limits(account)),
-        section("Designs of the front, with 5 to 95 % of the draws", _front(account, problem)),
-        section(f"The front at {rate} confidence", _robust(account, problem)),
+        section(
+            "Designs of the front, 5 to 95 % of the draws, and the chance of meeting all limits",
+            _front(account, problem),
+        ),
+        section(
+            f"The front at {rate} confidence, with the chance of meeting all limits",
+            _robust(account, problem),
+        ),
         section(
             "What matters: share of the variance, with what it does together", _influence(account)
         ),
@@ -96,7 +102,8 @@ def _limits(account: Account) -> str:
 
 def _front(account: Account, problem: Problem) -> str:
     names = [problem.outcome(aim.outcome) for aim in problem.aims]
-    rows = [("", *(_heading(named, _sizes(account, named)) for named in names), "ALL LIMITS", "")]
+    heads = [_heading(named, _sizes(account, named)) for named in names]
+    rows = [("", *heads, "CHANCE", f"AT {_rate(account)}")]
     for design in account["shown"]:
         label = f"{design['letter']} {design['label']}".strip()
         figures = [_banded(design, named, _sizes(account, named)) for named in names]
@@ -106,8 +113,8 @@ def _front(account: Account, problem: Problem) -> str:
 
 def _fate(design: Account) -> str:
     if not design["survives"]:
-        return "too often over a limit"
-    return "on the robust front" if design["on_robust_front"] else "beaten at the confidence"
+        return "over a limit"
+    return "unbeaten" if design["on_robust_front"] else "beaten"
 
 
 def _robust(account: Account, problem: Problem) -> str:
@@ -116,12 +123,12 @@ def _robust(account: Account, problem: Problem) -> str:
     sizes = problem.variables
     columns = {variable.name: variable.column for variable in sizes}
     heads = [_heading(named, _sizes(account, named, rate)) for named in names]
-    rows = [(*heads, "ALL LIMITS", *(words(v.name).upper() for v in sizes), "")]
+    rows = [(*heads, "CHANCE", *(words(v.name).upper() for v in sizes), "")]
     for design in account["robust_shown"]:
         figures = [_one(design, named, _sizes(account, named, rate), rate) for named in names]
         chance = f"{100.0 * design['chance_of_all']:.1f} %"
         values = [_variable(design, v, columns) for v in sizes]
-        source = "searched anew" if design["searched_for_it"] else "of the given front"
+        source = "new" if design["searched_for_it"] else "given"
         rows.append((*figures, chance, *values, source))
     return table(rows, right=range(len(rows[0]) - 1)) if len(rows) > 1 else ""
 
@@ -155,13 +162,19 @@ def _one(design: Account, named: Outcome, size: float, what: str) -> str:
 
 
 def _banded(design: Account, named: Outcome, size: float) -> str:
-    """The nominal figure and its band: "8.62 (7.9 to 9.3)"."""
+    """The nominal figure and its band, "8.62 (7.9 to 9.3)", or the one figure that it always is."""
     _, factor, offset = shown(named.unit, size)
     low, high = (
-        format_number(design[f"{named.name}_{what}{suffix(named.unit)}"] * factor + offset)
+        _short(design[f"{named.name}_{what}{suffix(named.unit)}"] * factor + offset)
         for what in ("p5", "p95")
     )
-    return f"{format_number(design[named.column] * factor + offset)} ({low} to {high})"
+    nominal = _short(design[named.column] * factor + offset)
+    return nominal if low == nominal == high else f"{nominal} ({low} to {high})"
+
+
+def _short(value: float) -> str:
+    """Three significant digits."""
+    return format_number(float(f"{value:.3g}"))
 
 
 def _influence(account: Account) -> str:

@@ -27,7 +27,10 @@ _USUAL: dict[str, tuple[Spread, str]] = {
         "laws of onset are good to a factor 1.5 either way (common practice)",
     ),
     "laminar_heat": (_share(0.10), "real inlets and streams (common practice)"),
-    "turbulent_heat": (_share(0.11), "air data within 11 % (Lienhard 2020)"),
+    "turbulent_heat": (
+        _share(0.11),
+        "air data within 11 % (Lienhard 2020), taken for other fluids too",
+    ),
     "laminar_friction": (_share(0.08), "5 to 10 % (common practice)"),
     "turbulent_friction": (_share(0.08), "5 to 10 % (common practice)"),
     "gap": (

@@ -449,3 +449,15 @@ def test_a_search_broken_off_by_the_user_ends_the_study(monkeypatch):
 
     with pytest.raises(KeyboardInterrupt):
         studied(problem, front, told=impatient, **FEW)
+
+
+def test_a_design_that_stands_on_a_limit_meets_it_whatever_the_rounding():
+    problem = doubtful(
+        (Variable("x", "m", 0.0, 1.0, "x"),),
+        (spread("a", 0.9, 1.1),),
+        {"flow": lambda v, u: (v["x"] / u["a"]) * u["a"], "cost": lambda v, u: v["x"] + u["a"]},
+        (Aim("cost", "least"),),
+        (Limit("flow", at_least=0.3, at_most=0.3),),
+    )
+    assert banded(problem, column(0.3), terms(problem)).chance_of_all == pytest.approx(1.0)
+    assert banded(problem, column(0.3001), terms(problem)).chance_of_all == pytest.approx(0.0)
