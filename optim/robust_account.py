@@ -81,20 +81,12 @@ def tables(study: Study) -> pd.DataFrame:
 
 def answer(study: Study) -> str:
     """The answer in a few sentences."""
-    rate, total = f"{100.0 * study.terms.confidence:g} %", len(study.front)
-    meet = int(study.survives.sum())
-    limits = "meet all limits" if study.problem.limits else "can be built and driven"
-    said = [f"{meet} of the {total} designs of the front {limits} with a chance of {rate} or more."]
+    rate = f"{100.0 * study.terms.confidence:g} %"
+    said = [_surviving(study, rate)]
     if not len(study.robust):
         said.append("No other design does either: give more room in the limits, or know more.")
         return " ".join(said)
-    held, near = int(study.unbeaten.sum()), int(study.near.sum())
-    stay = "stays" if held == 1 else "stay"
-    near_it = f"; {near} lie on that front or within 1 % of it" if near > held else ""
-    said.append(
-        f"{held or 'None'} of them {stay} unbeaten when every aim is taken at {rate} "
-        f"confidence{near_it}."
-    )
+    said.append(_staying(study, rate))
     changes = [
         f"{words(price['outcome'])} {_apart(price)}"
         for price in _price(study)
@@ -108,6 +100,39 @@ def answer(study: Study) -> str:
     if deciding := list(_deciding(study)):
         said.append(f"What decides most: {_listed(deciding)}.")
     return " ".join(said)
+
+
+def _surviving(study: Study, rate: str) -> str:
+    """How many designs of the given front hold at the confidence."""
+    total, meet = len(study.front), int(study.survives.sum())
+    does = "meet all limits" if study.problem.limits else "can be built and driven"
+    if total == 1:
+        one = does.replace("meet ", "meets ")
+        negative = "does not meet all limits" if study.problem.limits else "cannot be built"
+        return f"The one design {one if meet else negative} with a chance of {rate} or more."
+    many = {0: f"None of the {total}", total: f"All {total}"}.get(meet, f"{meet} of the {total}")
+    return f"{many} designs of the front {does} with a chance of {rate} or more."
+
+
+def _staying(study: Study, rate: str) -> str:
+    """How much of them is on the front at the confidence, and how much of that is new."""
+    held, near, anew = (int(marks.sum()) for marks in (study.unbeaten, study.near, study.anew))
+    new = f"the front at {rate} confidence was searched anew"
+    if not study.survives.any():
+        count = len(study.robust)
+        return f"{new[0].upper()}{new[1:]}: {count} design{'s' * (count > 1)}."
+    if len(study.front) == 1:
+        stays = "stays unbeaten" if held else "is beaten"
+        return f"It {stays} when every aim is taken at {rate} confidence."
+    if not near:
+        return f"All of them are beaten when every aim is taken at {rate} confidence; {new}."
+    near_it = f"; {near} lie on that front or within 1 % of it" if near > held else ""
+    stay = "stays" if held == 1 else "stay"
+    more = f"; {anew} more designs of it were found" if anew else ""
+    return (
+        f"{held or 'None'} of them {stay} unbeaten when every aim is taken at {rate} "
+        f"confidence{near_it}{more}."
+    )
 
 
 def _listed(parts: list[str]) -> str:

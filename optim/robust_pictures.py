@@ -28,7 +28,7 @@ FRONT, INPUTS, LIMITS = PICTURES
 _BANDED = 15  # designs that carry their band in the picture
 _LEGEND_MM = 46.0
 _BAR_MM, _PANEL_GAP_MM = 5.0, 18.0
-_MANY = 150  # designs from which markers are smaller
+_FEW, _MANY = 10, 150  # designs from which markers are smaller
 _LEAST = 0.005  # total index from which an input is drawn
 _SIDES = {"at_most": "at most", "at_least": "at least"}
 _LINES = ("o", "^", "s", "D", "v", "P")
@@ -55,7 +55,7 @@ def front_picture(study: Study) -> Figure:
     """
     with ink.style():
         below = (
-            f"{len(study.front)} designs as computed, with what {study.samples} shared draws make "
+            f"{_counted(len(study.front))} as computed, with what {study.samples} shared draws make "
             f"of some, and the front at {_rate(study)} confidence"
         )
         top = ink.head_mm(study.problem.title, below)
@@ -66,11 +66,12 @@ def front_picture(study: Study) -> Figure:
         x, y = (_axis(ax, study, side) for side in ("x", "y"))
         _bands(ax, study, x, y)
         lost = ~study.survives
-        size = 3.4 if len(study.front) < _MANY else 2.6
-        ax.plot(
-            x.given[~lost], y.given[~lost], ls="", marker="o", ms=size, mfc="none", mew=0.6,
-            mec=ink.PALETTE[0], label="given front,\nlimits hold", zorder=3,
-        )  # fmt: skip
+        size = _size(len(study.front))
+        if not lost.all():
+            ax.plot(
+                x.given[~lost], y.given[~lost], ls="", marker="o", ms=size, mfc="none", mew=0.6,
+                mec=ink.PALETTE[0], label="given front,\nlimits hold", zorder=3,
+            )  # fmt: skip
         if lost.any():
             ax.plot(
                 x.given[lost], y.given[lost], ls="", marker="x", ms=size + 1.0, mew=0.8,
@@ -79,12 +80,21 @@ def front_picture(study: Study) -> Figure:
             )  # fmt: skip
         if len(study.robust):
             ax.plot(
-                x.robust, y.robust, ls="", marker="^", ms=size + 0.2, mfc=ink.PALETTE[1],
+                x.robust, y.robust, ls="", marker="^", ms=_size(len(study.robust)) + 0.2, mfc=ink.PALETTE[1],
                 mec="none", label=f"front at {_rate(study)},\nfigures assured", zorder=2,
             )  # fmt: skip
         handles, labels = ax.get_legend_handles_labels()
         ink.legend(ax, handles, labels, 1.0)
         return figure
+
+
+def _counted(count: int) -> str:
+    return "One design" if count == 1 else f"{count} designs"
+
+
+def _size(count: int) -> float:
+    """Size of the markers of so many designs."""
+    return 2.6 if count >= _MANY else 3.4 if count >= _FEW else 6.0
 
 
 class _Side:

@@ -10,11 +10,13 @@ import textwrap
 from collections.abc import Mapping, Sequence
 from typing import Any
 
+from optim.picks import leading
 from optim.text import WIDTH, section, sentences, table, words
 from problems.problem import Outcome, Problem, Variable
 from problems.units import format_number, format_value, shown, suffix
 
 Account = Mapping[str, Any]
+_AIMS = 3  # in a table; more do not fit on a line
 _MOST = 5  # inputs told of for each outcome
 
 
@@ -37,10 +39,16 @@ def of_study(account: Account, problem: Problem) -> str:
         section(
             "What matters: share of the variance, with what it does together", _influence(account)
         ),
-        section("Notes", sentences(account["notes"])),
+        section("Notes", sentences([*account["notes"], *_left_out(problem)])),
         section("Cautions", sentences(account["safety"])),
     ]
     return "\n".join(filter(None, parts)).rstrip()
+
+
+def _left_out(problem: Problem) -> list[str]:
+    """That some aims are not in the tables, where that is so."""
+    more = [words(aim.outcome) for aim in leading(problem)[_AIMS:]]
+    return [f"Not in these tables but in robust.csv: {', '.join(more)}."] if more else []
 
 
 def _rate(account: Account) -> str:
@@ -101,7 +109,7 @@ def _limits(account: Account) -> str:
 
 
 def _front(account: Account, problem: Problem) -> str:
-    names = [problem.outcome(aim.outcome) for aim in problem.aims]
+    names = [problem.outcome(aim.outcome) for aim in leading(problem)[:_AIMS]]
     heads = [_heading(named, _sizes(account, named)) for named in names]
     rows = [("", *heads, "CHANCE", f"AT {_rate(account)}")]
     for design in account["shown"]:
@@ -119,7 +127,7 @@ def _fate(design: Account) -> str:
 
 def _robust(account: Account, problem: Problem) -> str:
     rate = f"at_{100.0 * account['confidence']:g}"
-    names = [problem.outcome(aim.outcome) for aim in problem.aims]
+    names = [problem.outcome(aim.outcome) for aim in leading(problem)[:_AIMS]]
     sizes = problem.variables
     columns = {variable.name: variable.column for variable in sizes}
     heads = [_heading(named, _sizes(account, named, rate)) for named in names]

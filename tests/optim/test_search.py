@@ -531,3 +531,13 @@ def test_long_history_keeps_its_end_whole_and_stays_short():
     assert told[-1] == 400
     assert len(told) <= 240
     assert told[-80:] == list(range(321, 401))
+
+
+def test_designs_that_are_known_are_tried_first_and_never_lost():
+    problem = trade()
+    known = np.array([[1.2, 15.0 * 0.35], [0.05, 1.0]])
+    front = search(problem, seed=2, evaluations=40, start=known)
+    found = front.table[["length_m", "speed_m_s"]].to_numpy()
+    assert np.isclose(found, known[1]).all(axis=1).any()  # the least effort of all
+    plain = search(problem, seed=2, evaluations=40)
+    assert not np.isclose(plain.table["length_m"], 0.05, atol=1e-6).any()
