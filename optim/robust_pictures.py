@@ -55,8 +55,8 @@ def front_picture(study: Study) -> Figure:
     """
     with ink.style():
         below = (
-            f"{_counted(len(study.front))} as computed, with what {study.samples} shared draws make "
-            f"of some, and the front at {_rate(study)} confidence"
+            f"{_counted(len(study.front))} as computed, with what {study.samples} shared draws "
+            f"make of some, and the front at {_rate(study)} confidence"
         )
         top = ink.head_mm(study.problem.title, below)
         figure = ink.sheet(100.0 + top)
@@ -80,8 +80,8 @@ def front_picture(study: Study) -> Figure:
             )  # fmt: skip
         if len(study.robust):
             ax.plot(
-                x.robust, y.robust, ls="", marker="^", ms=_size(len(study.robust)) + 0.2, mfc=ink.PALETTE[1],
-                mec="none", label=f"front at {_rate(study)},\nfigures assured", zorder=2,
+                x.robust, y.robust, ls="", marker="^", ms=_size(len(study.robust)) + 0.2,
+                mfc=ink.PALETTE[1], mec="none", label=f"front at {_rate(study)},\nfigures assured", zorder=2,
             )  # fmt: skip
         handles, labels = ax.get_legend_handles_labels()
         ink.legend(ax, handles, labels, 1.0)

@@ -534,7 +534,7 @@ def test_long_history_keeps_its_end_whole_and_stays_short():
 
 
 def test_designs_that_are_known_are_tried_first_and_never_lost():
-    problem = trade()
+    problem = toy.trade()
     known = np.array([[1.2, 15.0 * 0.35], [0.05, 1.0]])
     front = search(problem, seed=2, evaluations=40, start=known)
     found = front.table[["length_m", "speed_m_s"]].to_numpy()
