@@ -42,6 +42,9 @@ def crew(case: Case, problem: Problem, workers: int) -> Iterator[Each]:
         return pool.map(_worked, *zip(*((work, block) for block in blocks), strict=True))
 
     try:
+        with _unheard():
+            for _ in range(workers):  # each starts one
+                pool.submit(_nothing)
         yield each
     except BrokenExecutor as fault:
         raise RunError("a worker ended before its work was done; try --workers 1") from fault
@@ -49,12 +52,29 @@ def crew(case: Case, problem: Problem, workers: int) -> Iterator[Each]:
         pool.shutdown(cancel_futures=True)
 
 
-def _ready(source: str, name: str, folder: str) -> None:
+@contextmanager
+def _unheard() -> Iterator[None]:
+    """Processes started within this context do not hear Ctrl-C; whoever started them ends them."""
     import signal
+    import threading
 
+    if threading.current_thread() is not threading.main_thread():
+        yield
+        return
+    before = signal.signal(signal.SIGINT, signal.SIG_IGN)
+    try:
+        yield
+    finally:
+        signal.signal(signal.SIGINT, before)
+
+
+def _nothing() -> None:
+    """Work for a process that is to start."""
+
+
+def _ready(source: str, name: str, folder: str) -> None:
     from problems.case import parse_case
 
-    signal.signal(signal.SIGINT, signal.SIG_IGN)  # whoever started the workers ends them
     _HERE["problem"] = build(parse_case(source, name, folder=folder))
 
 

@@ -81,7 +81,8 @@ def front_picture(study: Study) -> Figure:
         if len(study.robust):
             ax.plot(
                 x.robust, y.robust, ls="", marker="^", ms=_size(len(study.robust)) + 0.2,
-                mfc=ink.PALETTE[1], mec="none", label=f"front at {_rate(study)},\nfigures assured", zorder=2,
+                mfc=ink.PALETTE[1], mec="none", zorder=2,
+                label=f"front at {_rate(study)},\nfigures assured",
             )  # fmt: skip
         handles, labels = ax.get_legend_handles_labels()
         ink.legend(ax, handles, labels, 1.0)
