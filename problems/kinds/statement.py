@@ -20,9 +20,9 @@ from problems.convection import fluids
 from problems.convection.flat_plate import smooth_step
 from problems.convection.fluids import Fluid, FluidError
 from problems.fans.choice import Choice
-from problems.kinds import cautions, laws, pictures, plate, stack, words
+from problems.kinds import cautions, laws, pictures, plate, possible, stack, words
 from problems.kinds import sampled as under_draws
-from problems.kinds.blown import Blower, bought, reasons_of
+from problems.kinds.blown import Blower, bought
 from problems.kinds.doubts import doubts, taken_as_exact
 from problems.kinds.outcomes import OPTIONAL, OUTCOMES, SETTINGS
 from problems.kinds.swept import CHUNK, Settings, Walked, settings, variables
@@ -31,7 +31,6 @@ from problems.uncertain import Sampled
 
 _Scalar = TypeVar("_Scalar", bound=np.generic)
 
-_TOUCHING = 0.8  # share of the gap that wires on both walls may take
 _REACH = 300.0  # K from the inlet that a wall under a flux may reach
 
 
@@ -106,9 +105,9 @@ class SweptPlates(Problem):
         return joined(parts) if len(parts) > 1 else parts[0]
 
     def _evaluate(self, batch: Batch) -> Evaluation:
-        impossible_by, reasons = _impossible(self.fluid, batch)
+        impossible_by, reasons = possible.impossible(self.fluid, batch)
         if batch.choice is not None:
-            impossible_by, reasons = _unserved(batch, batch.choice, impossible_by, reasons)
+            impossible_by, reasons = possible.unserved(batch, batch.choice, impossible_by, reasons)
         walk = laws.Walk(batch.walked.surface, batch.walked.sweep)
         return Evaluation(
             settings=batch.settings,
@@ -143,13 +142,13 @@ class SweptPlates(Problem):
     def figures(self, given: Settings) -> tuple[dict[str, Floats], Bools]:
         """Outcomes and settings of a chunk of designs, and whether each is possible."""
         batch = self._balanced(given)
-        impossible_by, reasons = _impossible(self.fluid, batch)
+        impossible_by, reasons = possible.impossible(self.fluid, batch)
         if batch.choice is not None:
-            impossible_by, _ = _unserved(batch, batch.choice, impossible_by, reasons)
-        possible = impossible_by == 0.0
+            impossible_by, _ = possible.unserved(batch, batch.choice, impossible_by, reasons)
+        there = impossible_by == 0.0
         if "inlet" in given:
-            possible &= (given["inlet"] >= self.fluid.low) & (given["inlet"] <= self.fluid.high)
-        return {**batch.settings, **batch.outcomes}, possible
+            there &= (given["inlet"] >= self.fluid.low) & (given["inlet"] <= self.fluid.high)
+        return {**batch.settings, **batch.outcomes}, there
 
     def fan_rows(self, given: Settings) -> NDArray[np.intp]:
         """The fan chosen for each of a chunk of designs, as a row of the blower's curves."""
@@ -243,19 +242,6 @@ def _given(case: Case) -> tuple[Outcome, ...]:
     return tuple(o for o in OUTCOMES[case.kind] if tables.get(OPTIONAL.get(o.name, ""), True))
 
 
-def _unserved(
-    batch: Batch, choice: Choice, impossible_by: Floats, reasons: NDArray[np.str_]
-) -> tuple[Floats, NDArray[np.str_]]:
-    """Designs that no fan can serve are impossible too, with the reason of the nearest fan."""
-    short = np.where(choice.duty.holds, 0.0, np.maximum(choice.duty.short_by, 1e-6))
-    texts = np.where(choice.duty.holds, "", reasons_of(choice))
-    if batch.met is not None:
-        off = choice.duty.holds & ~batch.met
-        short = np.where(off, 0.1, short)
-        texts = np.where(off, "the fan drives a velocity outside the range of the case", texts)
-    return impossible_by + short, np.where(reasons == "", texts, reasons)
-
-
 def _common(
     case: Case, given: Settings, walked: Walked, outcomes: dict[str, Floats]
 ) -> dict[str, Floats]:
@@ -287,56 +273,6 @@ def _onset(walked: Walked) -> Floats:
     """Where transition begins, as a share of the length; 1 where the plate stays laminar."""
     share = np.minimum(walked.sweep.onset.re_x / walked.surface.re_l, 1.0)
     return np.asarray(share ** smooth_step(walked.sweep.sustains, 0.0, 0.5))
-
-
-def _impossible(fluid: Fluid, batch: Batch) -> tuple[Floats, NDArray[np.str_]]:
-    """How far each design is from existing, and why; see `Evaluation`."""
-    wire = batch.walked.sweep.wire
-    touching = np.zeros_like(batch.walked.h)
-    if wire is not None:
-        touching = np.maximum(wire.blockage - _TOUCHING, 0.0)
-    above, below = _out_of_table(fluid, batch)
-    reasons = np.full(touching.shape, "", dtype=object)
-    reasons[below > 0.0] = _low_reason(fluid)
-    reasons[above > 0.0] = _high_reason(fluid)
-    reasons[touching > 0.0] = f"the wires fill over {_TOUCHING:.0%} of the gap"
-    return touching + above + below, reasons.astype(np.str_)
-
-
-def _out_of_table(fluid: Fluid, batch: Batch) -> tuple[Floats, Floats]:
-    """How far temperatures lie above and below what is known of the fluid, over its span.
-
-    Humid air under its dew point keeps the properties it has there: a surface may be wet, and a
-    caution says so.
-    """
-    hot, cold = batch.outcomes["hottest_wall"], batch.outcomes["coldest_wall"]
-    hot, cold = np.maximum(hot, batch.walked.film), np.minimum(cold, batch.walked.film)
-    if "outlet_temperature" in batch.outcomes:
-        outlet = batch.outcomes["outlet_temperature"]
-        hot, cold = np.maximum(hot, outlet), np.minimum(cold, outlet)
-    span = fluid.high - fluid.low
-    above = np.maximum(hot - fluid.high - 1e-6, 0.0) / span
-    if fluid.dew_point is not None:
-        cold = np.where(cold > 200.0, fluid.low, cold)
-    return above, np.maximum(fluid.low - cold - 1e-6, 0.0) / span
-
-
-def _high_reason(fluid: Fluid) -> str:
-    boiling = fluid.saturation_temperature
-    if fluid.phase == "liquid" and boiling is not None and fluid.high > boiling - 1.0:
-        return f"{fluid.name} boils at {boiling - 273.15:.1f} degC: a wall is hotter"
-    known = f"{fluid.high - 273.15:.0f} degC, up to where {fluid.name} is known"
-    return f"a temperature is over {known}"
-
-
-def _low_reason(fluid: Fluid) -> str:
-    freezing, condensing = fluid.freezing_point, fluid.saturation_temperature
-    if freezing is not None and fluid.low < freezing + 1.0:
-        return f"{fluid.name} freezes at {freezing - 273.15:.1f} degC: a wall is colder"
-    if fluid.phase == "gas" and condensing is not None and fluid.low < condensing + 1.0:
-        return f"{fluid.name} condenses at {condensing - 273.15:.1f} degC: a wall is colder"
-    known = f"{fluid.low - 273.15:.0f} degC, down to where {fluid.name} is known"
-    return f"a temperature is under {known}"
 
 
 def _fluid(case: Case, inlets: tuple[float, float] | None = None) -> Fluid:

@@ -461,3 +461,16 @@ def test_a_design_that_stands_on_a_limit_meets_it_whatever_the_rounding():
     )
     assert banded(problem, column(0.3), terms(problem)).chance_of_all == pytest.approx(1.0)
     assert banded(problem, column(0.3001), terms(problem)).chance_of_all == pytest.approx(0.0)
+
+
+def test_bands_agree_with_plain_monte_carlo_on_a_ready_made_case():
+    problem = build(load_case("hulling-stack"))
+    middle = np.array([[np.sqrt(v.low * v.high) if v.low else 1e-3 for v in problem.variables]])
+    sobol = banded(problem, middle, Terms(shared(problem.uncertain, 1024, 1), 0.9))
+    rng = np.random.default_rng(7)
+    draws = {known.name: known.drawn(rng.random(20_000)) for known in problem.uncertain}
+    plain = problem.sampled(middle, draws, ["heat", "drag", "fan_power"])
+    for name, values in plain.outcomes.items():
+        wanted = np.percentile(values[0], [5.0, 50.0, 95.0])
+        spread_of = wanted[2] - wanted[0]
+        assert sobol.band[name][0] == pytest.approx(wanted, abs=0.03 * spread_of), name
