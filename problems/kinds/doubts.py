@@ -13,7 +13,7 @@ from problems.spreads import MEANINGS, Spread
 from problems.uncertain import Uncertain
 
 _UNITS = {"inlet": "K", "gap": "m", "wire": "m", "wire_place": "m", "fouling": "m2 K/W"}
-IN_CASE = "stated in the case"
+IN_CASE = "as stated"
 
 
 def _share(half: float) -> Spread:
