@@ -189,12 +189,9 @@ def _add_robust(commands: Any) -> None:
         "[uncertain] of the run's case.toml; without it what is usual is taken.",
     )
     robust.add_argument("run", metavar="RUN", type=Path, help="the folder that a search left")
-    robust.add_argument(
-        "--set",
-        metavar="KEY=VALUE",
-        action="append",
-        default=[],
-        help="what is uncertain, in place of the case's, such as uncertain.gap=5%% or "
+    _add_set(
+        robust,
+        "what is uncertain, in place of the case's, such as uncertain.gap=5%% or "
         "uncertain.inlet=15degC..35degC; may be repeated",
     )
     robust.add_argument(
@@ -220,14 +217,12 @@ def _add_robust(commands: Any) -> None:
     _finish(robust, _robust)
 
 
-def _add_set(parser: argparse.ArgumentParser) -> None:
-    parser.add_argument(
-        "--set",
-        metavar="KEY=VALUE",
-        action="append",
-        default=[],
-        help='a value in place of the case\'s, such as length=0.3 or gap="8 mm"; may be repeated',
-    )
+def _add_set(
+    parser: argparse.ArgumentParser,
+    text: str = "a value in place of the case's, such as length=0.3 or "
+    'gap="8 mm"; may be repeated',
+) -> None:
+    parser.add_argument("--set", metavar="KEY=VALUE", action="append", default=[], help=text)
 
 
 def _add_seed(parser: argparse.ArgumentParser, text: str) -> None:

@@ -16,7 +16,7 @@ from optim.course import INTERRUPTED
 from optim.front import Front
 from optim.picks import column, designs
 from optim.search import search
-from optim.task import values
+from optim.task import task_of, values
 from problems.problem import Aim, Bools, Evaluation, Floats, Limit, Problem
 
 FRONT_EVALUATIONS, EVALUATIONS = 40_000, 6000
@@ -214,13 +214,7 @@ def _leader(entry: Entry, stated: Problem, rows: Floats) -> Design | None:
 
 def feasible(problem: Problem, given: Evaluation) -> Bools:
     """Which of the designs evaluated are possible and meet the limits of `problem`."""
-    sound = given.possible.copy()
-    for limit in problem.limits:
-        figures = values(given, limit.outcome)
-        low = -np.inf if limit.at_least is None else limit.at_least
-        high = np.inf if limit.at_most is None else limit.at_most
-        sound &= (figures >= low) & (figures <= high)
-    return sound
+    return np.asarray(task_of(problem).judge(given).violation <= 0.0)
 
 
 def _met(design: Design, limit: Limit) -> bool:

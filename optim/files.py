@@ -5,9 +5,10 @@ Written beside their place under another name first, then moved into it in one g
 
 from __future__ import annotations
 
+import json
 import os
 import tempfile
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from contextlib import contextmanager
 from pathlib import Path
 from typing import IO, Any
@@ -30,6 +31,13 @@ def written_whole(path: Path, mode: str = "w") -> Iterator[IO[Any]]:
     except BaseException:
         Path(name).unlink(missing_ok=True)
         raise
+
+
+def write_json(path: Path, account: Mapping[str, Any]) -> None:
+    """Plain data as a JSON file, whole or not at all; a figure that is not finite is a fault."""
+    with written_whole(path) as stream:
+        json.dump(account, stream, indent=2, ensure_ascii=False, allow_nan=False)
+        stream.write("\n")
 
 
 def _umask() -> int:

@@ -16,7 +16,7 @@ import numpy as np
 import pandas as pd
 
 from optim.errors import RunError, RunExistsError
-from optim.files import written_whole
+from optim.files import write_json, written_whole
 from problems.problem import Bools, Evaluation, Floats, Problem
 
 TEXTS = ("fan", "group", "outside", "cautions")
@@ -56,9 +56,7 @@ class Front:
             self.table.to_csv(stream, index=False, lineterminator="\n")
         with written_whole(place / CASE) as stream:
             stream.write(self.source)
-        with written_whole(place / PROVENANCE) as stream:
-            json.dump(self.provenance, stream, indent=2, ensure_ascii=False, allow_nan=False)
-            stream.write("\n")
+        write_json(place / PROVENANCE, self.provenance)
         return place
 
     @classmethod

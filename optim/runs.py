@@ -7,6 +7,7 @@ What stands in the files of a run is for `front` and `plots`; the search's own s
 from __future__ import annotations
 
 import tempfile
+from collections.abc import Iterable
 from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -99,6 +100,21 @@ def free_name(folder: Path, stem: str, ending: str) -> Path:
     path, number = folder / f"{stem}{ending}", 2
     while path.exists():
         path, number = folder / f"{stem}-{number}{ending}", number + 1
+    return path
+
+
+def kept_clear(path: Path, names: Iterable[str], *, force: bool) -> Path:
+    """The folder at `path`, made if need be, for files called `names`.
+
+    Raises RunExistsError where it holds some of them and `force` is not given, RunError where it
+    cannot be written to.
+    """
+    held = [name for name in names if (path / name).exists()]
+    if held and not force:
+        raise RunExistsError(
+            f"{path}: holds {', '.join(held)} already; nothing is replaced without --force"
+        )
+    writable(path)
     return path
 
 

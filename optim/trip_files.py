@@ -5,14 +5,12 @@ What is in them is made in `trip_account` and `trip_pictures`.
 
 from __future__ import annotations
 
-import json
 from collections.abc import Mapping
 from pathlib import Path
 from typing import Any
 
-from optim.errors import RunExistsError
-from optim.files import written_whole
-from optim.runs import writable
+from optim.files import write_json, written_whole
+from optim.runs import kept_clear
 from optim.trip_account import rows
 from optim.trip_study import TripStudy
 
@@ -21,18 +19,8 @@ PICTURES = ("strategies.png", "gain.png", "map.png", "wire.png")
 
 
 def opened(path: Path, *, force: bool) -> Path:
-    """The folder at `path`, made if need be.
-
-    Raises RunExistsError where it holds such files and `force` is not given, RunError where it
-    cannot be written to.
-    """
-    held = [name for name in (TABLE, ACCOUNT, CASE, *PICTURES) if (path / name).exists()]
-    if held and not force:
-        raise RunExistsError(
-            f"{path}: holds {', '.join(held)} already; nothing is replaced without --force"
-        )
-    writable(path)
-    return path
+    """The folder at `path`, made if need be; see `runs.kept_clear`."""
+    return kept_clear(path, (TABLE, ACCOUNT, CASE, *PICTURES), force=force)
 
 
 def saved(study: TripStudy, account: Mapping[str, Any], folder: Path) -> list[str]:
@@ -56,8 +44,5 @@ def saved(study: TripStudy, account: Mapping[str, Any], folder: Path) -> list[st
         stream.write(study.case.source)
     drawn = [picture.name for picture in save_pictures(study, folder)]
     files = [TABLE, CASE, *drawn, ACCOUNT]
-    with written_whole(folder / ACCOUNT) as stream:
-        told = {**account, "files": files}
-        json.dump(told, stream, indent=2, ensure_ascii=False, allow_nan=False)
-        stream.write("\n")
+    write_json(folder / ACCOUNT, {**account, "files": files})
     return files
